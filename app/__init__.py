@@ -1,0 +1,1 @@
+"""The notebook and the command line. Knows no aerodynamics."""

@@ -1,0 +1,1 @@
+"""From frozen inputs to frozen results."""

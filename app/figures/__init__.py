@@ -1,0 +1,1 @@
+"""Bokeh figures, built once and then fed."""

@@ -1,0 +1,1 @@
+"""One module a sheet: each shows results, none computes."""

@@ -1,0 +1,1 @@
+"""Example scenarios and the measured tables that ship with them."""

@@ -1,0 +1,1 @@
+"""The aerodynamics: from air, sections and planform to margins. Knows no screen."""

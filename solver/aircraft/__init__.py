@@ -1,0 +1,1 @@
+"""What flies: configuration, trim, speed, landing."""

@@ -1,0 +1,1 @@
+"""The flow about one section (two-dimensional)."""

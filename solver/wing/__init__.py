@@ -1,0 +1,1 @@
+"""Lifting surfaces: planform, lifting line, stall."""
