@@ -125,6 +125,8 @@ class Scenario(param.Parameterized):
 
     def __init__(self, **values: object) -> None:
         super().__init__(**{name: cls() for name, cls in GROUPS.items()}, **values)
+        self.source_text = ""
+        """The file it was read from, word for word, so that its comments survive saving."""
         self._setting = False
         for name, cls in GROUPS.items():
             getattr(self, name).param.watch(self._changed, list(cls.__annotations__))
@@ -253,8 +255,8 @@ class Scenario(param.Parameterized):
         return self._usable_section(entry, value)
 
     def _usable_section(self, entry: Field, value: object) -> str:
-        known = ", ".join(self.sections)
-        requirement = f"NACA and its digits{f', or one of {known}' if known else ''}"
+        known = ", ".join(self.sections) or "none here"
+        requirement = f"NACA and its digits, or a section with tables ({known})"
         if not isinstance(value, str):
             raise InputError(entry.name, value, requirement)
         if value in self.sections:
@@ -268,7 +270,10 @@ class Scenario(param.Parameterized):
 def _usable_number(entry: Field, value: object) -> float:
     if isinstance(value, bool) or not isinstance(value, Real):
         raise InputError(entry.name, value, entry.requirement)
-    number = float(value)
+    try:
+        number = float(value) + 0.0  # a negative zero becomes a plain one
+    except OverflowError:
+        number = math.inf
     if not (math.isfinite(number) and entry.low <= number <= entry.high):
         raise InputError(entry.name, value, entry.requirement)
     return number

@@ -1,0 +1,415 @@
+"""Scenarios as TOML files: read with every refusal named, written atomically.
+
+A file holds ``schema = 1``, the tables ``[scenario]``, one for each group of
+fields and one ``[sections."NAME"]`` for each section that has tables. What is
+missing takes its default. What is wrong raises :class:`ScenarioError`, whose
+one sentence names the file, the key, the value and what is allowed.
+"""
+
+from __future__ import annotations
+
+import re
+import stat
+import tomllib
+from collections.abc import Iterator, Mapping
+from pathlib import Path, PurePosixPath
+from typing import Any
+
+from app.inputs import SectionTables
+from app.scenario import FIELDS, GROUPS, Scenario, SectionFiles, nearest
+from app.tables import TableError, read_drag_table, read_lift_table, read_outline_table
+from solver.errors import InputError
+
+SCHEMA = 1
+LARGEST_FILE = 1_000_000
+"""Largest scenario file that is read [bytes]."""
+
+MOST_SECTIONS = 40
+TABLE_KEYS = ("outline", "lift", "drag")
+TEXTS = {"name": 120, "author": 200, "note": 20_000}
+"""The texts of ``[scenario]`` and their largest lengths [characters]."""
+
+TABLES = ("scenario", *GROUPS, "sections")
+
+
+class ScenarioError(ValueError):
+    """A scenario file that cannot be used, in one sentence.
+
+    Parameters
+    ----------
+    file : str
+        The file, as the user named it.
+    key : str
+        The dotted key at fault; empty when it is the file as a whole.
+    message : str
+        What is wrong and what is allowed, to follow file and key.
+    """
+
+    def __init__(self, file: str, key: str, message: str) -> None:
+        self.file, self.key, self.message = file, key, message
+        super().__init__(f"{file}: {key} {message}" if key else f"{file} {message}")
+
+    def __reduce__(self) -> tuple[type, tuple[str, str, str]]:
+        # Without this the error does not survive a process boundary.
+        return type(self), (self.file, self.key, self.message)
+
+
+def read_scenario(path: str | Path) -> Scenario:
+    """Read a scenario and the tables it names.
+
+    Parameters
+    ----------
+    path : str or pathlib.Path
+        A TOML file of at most 1 MB; its tables lie in the same folder or below.
+
+    Returns
+    -------
+    Scenario
+        Valid as a whole: its `freeze` does not raise.
+
+    Raises
+    ------
+    ScenarioError
+        If anything in the file, or a table it names, cannot be used.
+    """
+    path = Path(path)
+    return scenario_from_text(_read_text(path), file=str(path), folder=path.parent)
+
+
+def scenario_from_text(text: str, *, file: str, folder: Path) -> Scenario:
+    """Make a scenario from the text of a file.
+
+    Parameters
+    ----------
+    text : str
+        TOML.
+    file : str
+        What errors call it.
+    folder : pathlib.Path
+        Where the paths of its tables start.
+
+    Returns
+    -------
+    Scenario
+        Valid as a whole.
+
+    Raises
+    ------
+    ScenarioError
+        As :func:`read_scenario`.
+    """
+    content = _parse(text, file)
+    _require_schema(content, file)
+    _require_tables(content, file)
+    scenario = Scenario(
+        **_texts(content.get("scenario", {}), file),
+        folder=folder,
+        sections=dict(_sections(content.get("sections", {}), file, folder)),
+    )
+    scenario.source_text = text
+    values = dict(_values(content, file))
+    try:
+        scenario.set_values(values)
+        scenario.freeze()
+    except InputError as error:
+        refusal = input_refusal(error, file)
+        if error.name in FIELDS and error.name not in values:
+            refusal = ScenarioError(
+                file, refusal.key, f"is missing and its default does not fit: it {refusal.message}"
+            )
+        raise refusal from error
+    return scenario
+
+
+def input_refusal(error: InputError, file: str) -> ScenarioError:
+    """Word a refused field as a fault of the file.
+
+    Parameters
+    ----------
+    error : InputError
+        Its name is a field of the scenario.
+    file : str
+        What the sentence calls the file.
+
+    Returns
+    -------
+    ScenarioError
+        With the dotted key of the field.
+    """
+    entry = FIELDS.get(error.name)
+    key = f"{entry.group}.{entry.name}" if entry else error.name
+    return ScenarioError(file, key, f"must be {error.requirement}; got {shown(error.value)}")
+
+
+def shown(value: object) -> str:
+    """Show a value in a sentence: as TOML would, on one line, cut when long.
+
+    Parameters
+    ----------
+    value : object
+        Anything that TOML can hold.
+
+    Returns
+    -------
+    str
+        At most about 60 characters.
+    """
+    if isinstance(value, bool):
+        return str(value).lower()
+    if isinstance(value, Mapping):
+        return "a table"
+    if isinstance(value, list):
+        return "a list"
+    text = ascii_safe(value) if isinstance(value, str) else f"{value}"
+    return text if len(text) <= 60 else f"{text[:57]}..."
+
+
+def ascii_safe(text: str) -> str:
+    """Quote a text so that no control character reaches a terminal."""
+    return repr(text[:80])
+
+
+def _read_text(path: Path) -> str:
+    file = str(path)
+    if "\0" in file:
+        raise ScenarioError(ascii_safe(file), "", "is not a usable file name")
+    try:
+        status = path.stat()
+        if stat.S_ISDIR(status.st_mode):
+            raise ScenarioError(file, "", "is a folder; a scenario is a TOML file")
+        if not stat.S_ISREG(status.st_mode):
+            raise ScenarioError(file, "", "is not a regular file; a scenario is a TOML file")
+        if status.st_size > LARGEST_FILE:
+            raise _too_large(file, status.st_size)
+        with path.open("rb") as stream:
+            data = stream.read(LARGEST_FILE + 1)
+    except FileNotFoundError:
+        raise ScenarioError(file, "", "does not exist; give the path of a TOML file") from None
+    except OSError as error:
+        raise ScenarioError(file, "", f"cannot be read: {error.strerror}") from error
+    if len(data) > LARGEST_FILE:
+        raise _too_large(file, len(data))
+    if not data.strip():
+        raise ScenarioError(file, "", f"is empty; a scenario starts with schema = {SCHEMA}")
+    try:
+        return data.decode("utf-8-sig")
+    except UnicodeDecodeError as error:
+        line = data[: error.start].count(b"\n") + 1
+        raise ScenarioError(
+            file,
+            "",
+            f"line {line} has the byte 0x{data[error.start]:02x}, which is not UTF-8; "
+            "a scenario is UTF-8 text",
+        ) from error
+
+
+def _too_large(file: str, size: int) -> ScenarioError:
+    return ScenarioError(
+        file,
+        "",
+        f"has {size / 1e6:.4g} MB; a scenario may have at most {LARGEST_FILE / 1e6:g} MB",
+    )
+
+
+def _parse(text: str, file: str) -> dict[str, Any]:
+    try:
+        return tomllib.loads(text)
+    except RecursionError:
+        raise ScenarioError(
+            file, "", "is nested too deeply; a scenario has tables and keys only"
+        ) from None
+    except ValueError as error:
+        found = re.fullmatch(r"(.*?)\s*\(at (.*)\)", str(error).splitlines()[0])
+        what, where = found.groups() if found else (str(error).splitlines()[0], "")
+        if where == "end of document":
+            where = f"line {text.count(chr(10)) + 1}, the end"
+        place = f" in {where}" if where else ""
+        raise ScenarioError(
+            file, "", f"is not TOML{place}: {what[:1].lower()}{what[1:]}"
+        ) from error
+
+
+def _require_schema(content: Mapping[str, Any], file: str) -> None:
+    if "schema" not in content:
+        raise ScenarioError(
+            file, "schema", f"is missing; a scenario starts with the line schema = {SCHEMA}"
+        )
+    schema = content["schema"]
+    if type(schema) is int and schema > SCHEMA:
+        raise ScenarioError(
+            file,
+            "schema",
+            f"must be {SCHEMA}; got {schema}, which a newer Halfspan has written",
+        )
+    if type(schema) is not int or schema != SCHEMA:
+        raise ScenarioError(file, "schema", f"must be {SCHEMA}; got {shown(schema)}")
+
+
+def _require_tables(content: Mapping[str, Any], file: str) -> None:
+    for name, value in content.items():
+        if name == "schema":
+            continue
+        if name not in TABLES:
+            raise _unknown(file, "", name, TABLES)
+        if not isinstance(value, Mapping):
+            raise ScenarioError(file, _quoted(name), f"must be a table; got {shown(value)}")
+
+
+def _unknown(file: str, table: str, name: str, known: tuple[str, ...]) -> ScenarioError:
+    dotted = f"{table}.{_quoted(name)}" if table else _quoted(name)
+    if (entry := FIELDS.get(name)) and entry.group != table:
+        return ScenarioError(file, dotted, f"is in the wrong place; it belongs in [{entry.group}]")
+    kind = "key" if table else "table"
+    guess = nearest(name, known)
+    allowed = f"there are {', '.join(known)}" if len(known) < 12 or not guess else ""
+    allowed = allowed or "`halfspan fields` lists all"
+    return ScenarioError(file, dotted, f"is not a known {kind}{guess}; {allowed}")
+
+
+def _quoted(name: str) -> str:
+    """Write a key as TOML would: quoted unless it is a bare word."""
+    if re.fullmatch(r"[A-Za-z0-9_-]{1,60}", name):
+        return name
+    return '"' + ascii_safe(name if len(name) <= 60 else f"{name[:57]}...")[1:-1] + '"'
+
+
+def _texts(table: Mapping[str, Any], file: str) -> dict[str, str]:
+    texts: dict[str, str] = {}
+    for name, value in table.items():
+        key = f"scenario.{name}"
+        if name not in TEXTS:
+            raise _unknown(file, "scenario", name, tuple(TEXTS))
+        if not isinstance(value, str):
+            raise ScenarioError(file, key, f"must be a text; got {shown(value)}")
+        if problem := text_problem(name, value):
+            raise ScenarioError(file, key, problem)
+        texts[name] = value
+    return texts
+
+
+def text_problem(name: str, value: str) -> str:
+    """Say what is wrong with a text of ``[scenario]``, or nothing.
+
+    Parameters
+    ----------
+    name : str
+        ``name``, ``author`` or ``note``.
+    value : str
+        The text.
+
+    Returns
+    -------
+    str
+        Empty when it is usable.
+    """
+    most = TEXTS[name]
+    if len(value) > most:
+        return f"must have at most {most} characters; got {len(value)}"
+    if name == "name" and not value.strip():
+        return f"must not be blank; got {shown(value)}"
+    allowed = "\n\t" if name == "note" else ""
+    if any(not (letter.isprintable() or letter in allowed) for letter in value):
+        return f"must have no control characters; got {shown(value)}"
+    return ""
+
+
+def _values(content: Mapping[str, Any], file: str) -> Iterator[tuple[str, object]]:
+    for group, cls in GROUPS.items():
+        known = tuple(cls.__annotations__)
+        for name, value in content.get(group, {}).items():
+            if name not in known:
+                raise _unknown(file, group, name, known)
+            yield name, value
+
+
+def _sections(
+    tables: Mapping[str, Any], file: str, folder: Path
+) -> Iterator[tuple[str, SectionFiles]]:
+    if len(tables) > MOST_SECTIONS:
+        raise ScenarioError(
+            file, "sections", f"must have at most {MOST_SECTIONS} tables; got {len(tables)}"
+        )
+    for name, table in tables.items():
+        key = f"sections.{_quoted(name)}"
+        if not name.strip() or len(name) > 80 or not name.isprintable():
+            raise ScenarioError(file, key, "must have a printable name of 1 to 80 characters")
+        if not isinstance(table, Mapping):
+            raise ScenarioError(file, key, f"must be a table; got {shown(table)}")
+        for entry in table:
+            if entry not in TABLE_KEYS:
+                raise _unknown(file, key, entry, TABLE_KEYS)
+        yield name, _section(table, file, key, folder)
+
+
+def _section(table: Mapping[str, Any], file: str, key: str, folder: Path) -> SectionFiles:
+    paths: dict[str, Path] = {}
+    for entry in TABLE_KEYS:
+        if entry not in table:
+            raise ScenarioError(
+                file, f"{key}.{entry}", "is missing; a section needs outline, lift and drag"
+            )
+        paths[entry] = _table_path(table[entry], file, f"{key}.{entry}", folder)
+    return SectionFiles(
+        outline=table["outline"],
+        lift=table["lift"],
+        drag=table["drag"],
+        tables=read_section_tables(paths, file=file, key=key),
+    )
+
+
+def read_section_tables(paths: Mapping[str, Path], *, file: str, key: str) -> SectionTables:
+    """Read the tables of one section.
+
+    Parameters
+    ----------
+    paths : mapping of str to pathlib.Path
+        Of ``outline``, ``lift`` and ``drag``.
+    file, key : str
+        What errors call the scenario and the section.
+
+    Returns
+    -------
+    SectionTables
+        With the hash of their content.
+
+    Raises
+    ------
+    ScenarioError
+        With the sentence of the table at fault.
+    """
+    entry = "outline"
+    try:
+        outline_name, outline = read_outline_table(paths["outline"])
+        entry = "lift"
+        lift = tuple(read_lift_table(paths["lift"]))
+        entry = "drag"
+        drag = tuple(read_drag_table(paths["drag"]))
+    except TableError as error:
+        raise ScenarioError(file, f"{key}.{entry}", f"cannot be used: {error}") from error
+    return SectionTables(outline_name=outline_name, outline=outline, lift=lift, drag=drag)
+
+
+def _table_path(value: object, file: str, key: str, folder: Path) -> Path:
+    allowed = "the path of a CSV file in the scenario's folder or below it"
+    if not isinstance(value, str) or not value or not value.isprintable() or len(value) > 1000:
+        raise ScenarioError(file, key, f"must be {allowed}; got {shown(value)}")
+    relative = PurePosixPath(value)
+    # A backslash or a drive would be another path on another system.
+    if relative.is_absolute() or ".." in relative.parts or "\\" in value or ":" in value:
+        raise ScenarioError(file, key, f"must be {allowed}; got {shown(value)}")
+    path = folder / relative
+    try:
+        inside = path.resolve().is_relative_to(folder.resolve())
+        if inside and path.is_file():
+            return path
+        exists = path.exists()
+    except OSError as error:
+        raise ScenarioError(
+            file, key, f"cannot be read: {shown(value)}, {error.strerror}"
+        ) from error
+    if not inside:
+        raise ScenarioError(
+            file, key, f"must be {allowed}; got {shown(value)}, a link that leads out of it"
+        )
+    problem = "is not a file" if exists else "does not exist"
+    raise ScenarioError(file, key, f"must be {allowed}; got {shown(value)}, which {problem}")

@@ -1,0 +1,246 @@
+"""Scenarios written as TOML: comments kept, all or nothing.
+
+The text a scenario was read from is changed in place, so that the comments of
+whoever wrote it stay. Every text is read again before it is written: what is
+saved is what would be loaded.
+"""
+
+from __future__ import annotations
+
+import os
+import secrets
+import tomllib
+from collections.abc import Mapping
+from pathlib import Path
+from typing import Any
+
+import tomlkit
+from tomlkit.exceptions import TOMLKitError
+from tomlkit.items import Item, Table
+
+from app.scenario import FIELDS, GROUPS, Scenario, SectionFiles
+from app.scenario_file import (
+    SCHEMA,
+    TABLE_KEYS,
+    TEXTS,
+    ScenarioError,
+    input_refusal,
+    read_section_tables,
+    text_problem,
+)
+from solver.errors import InputError
+
+
+def write_scenario(scenario: Scenario, path: str | Path) -> None:
+    """Write a scenario, and its tables when the folder is another one.
+
+    The file is replaced in one step: a reader sees the old or the new one,
+    never half of it. Tables are copied beside it where they are not yet there.
+    Afterwards the scenario's `folder` and `source_text` are those of the file.
+
+    Parameters
+    ----------
+    scenario : Scenario
+        Must be valid as a whole.
+    path : str or pathlib.Path
+        Where to; an existing file is replaced.
+
+    Raises
+    ------
+    ScenarioError
+        If the scenario is not valid, a table cannot be carried along, or the
+        file cannot be written. An existing file is as it was then.
+    """
+    path = Path(path)
+    file = str(path)
+    text = scenario_text(scenario, file=file)
+    try:
+        target = path.resolve()
+        if target.is_dir():
+            raise ScenarioError(file, "", "is a folder; a scenario is a TOML file")
+        _carry_tables(scenario, target.parent, file)
+        _replace(target, text.encode())
+    except OSError as error:
+        raise ScenarioError(file, "", f"cannot be written: {error.strerror}") from error
+    scenario.folder = target.parent
+    scenario.source_text = text
+
+
+def scenario_text(scenario: Scenario, *, file: str = "scenario") -> str:
+    """Word a scenario as TOML, with the comments of the text it was read from.
+
+    Parameters
+    ----------
+    scenario : Scenario
+        Must be valid as a whole.
+    file : str
+        What errors call it.
+
+    Returns
+    -------
+    str
+        Reads back as an equal scenario.
+
+    Raises
+    ------
+    ScenarioError
+        If the scenario is not valid.
+    """
+    content = _content(scenario, file)
+    for text in (_merged(scenario.source_text, content), _fresh(content)):
+        # The reader's library is another one than the writer's: it has the last word.
+        if text and tomllib.loads(text) == content:
+            return text
+    raise ScenarioError(file, "", "cannot be written as TOML that reads back the same")
+
+
+def _content(scenario: Scenario, file: str) -> dict[str, Any]:
+    """Everything the file has to say, as the reader will see it."""
+    try:
+        scenario.freeze()
+    except InputError as error:
+        raise input_refusal(error, file) from error
+    texts = {name: getattr(scenario, name) for name in TEXTS}
+    for name, value in texts.items():
+        if problem := text_problem(name, value):
+            raise ScenarioError(file, f"scenario.{name}", problem)
+    values = scenario.values()
+    content: dict[str, Any] = {"schema": SCHEMA, "scenario": texts}
+    for group, cls in GROUPS.items():
+        content[group] = {name: _plain(values[name]) for name in cls.__annotations__}
+    if scenario.sections:
+        content["sections"] = {
+            name: {key: getattr(files, key) for key in TABLE_KEYS}
+            for name, files in scenario.sections.items()
+        }
+    return content
+
+
+def _plain(value: float | str) -> float | int | str:
+    """Write 17 rather than 17.0: both read back as the same number."""
+    return int(value) if isinstance(value, float) and value.is_integer() else value
+
+
+def _item(value: Any) -> Item:  # noqa: ANN401 - whatever TOML can hold
+    if isinstance(value, str) and "\n" in value and not value.startswith("\n"):
+        return tomlkit.string(value, multiline=True)
+    return tomlkit.item(value)
+
+
+def _merged(text: str, content: Mapping[str, Any]) -> str:
+    """Change the text so that it says `content`; empty when that cannot be done."""
+    if not text:
+        return ""
+    try:
+        document = tomlkit.parse(text)
+        for name, table in content.items():
+            if name == "sections":
+                _merge_sections(document, table)
+            elif isinstance(table, Mapping):
+                if name not in document:
+                    document[name] = _fresh_table(table)
+                _merge_table(document[name], table)
+        if "sections" in document and "sections" not in content:
+            del document["sections"]
+        return tomlkit.dumps(document)
+    except (TOMLKitError, LookupError, TypeError, ValueError, AttributeError):
+        # Some legal spellings of TOML are beyond editing in place: start afresh.
+        return ""
+
+
+def _merge_table(table: Any, content: Mapping[str, Any]) -> None:  # noqa: ANN401 - tomlkit's kinds
+    for name, value in content.items():
+        if name not in table or table[name] != value:
+            table[name] = _item(value)
+
+
+def _merge_sections(document: tomlkit.TOMLDocument, content: Mapping[str, Any]) -> None:
+    if "sections" not in document:
+        document["sections"] = tomlkit.table(is_super_table=True)
+    sections: Any = document["sections"]
+    for name in [name for name in sections if name not in content]:
+        del sections[name]
+    for name, files in content.items():
+        if name not in sections:
+            sections[name] = _fresh_table(files)
+        _merge_table(sections[name], files)
+
+
+def _fresh(content: Mapping[str, Any]) -> str:
+    document = tomlkit.document()
+    document.add("schema", tomlkit.item(content["schema"]))
+    for name, table in content.items():
+        if name == "sections":
+            sections = tomlkit.table(is_super_table=True)
+            for section, files in table.items():
+                sections[section] = _fresh_table(files)
+            document[name] = sections
+        elif isinstance(table, Mapping):
+            document.add(tomlkit.nl())
+            document.add(name, _fresh_table(table))
+    return tomlkit.dumps(document)
+
+
+def _fresh_table(content: Mapping[str, Any]) -> Table:
+    table = tomlkit.table()
+    for name, value in content.items():
+        item = _item(value)
+        if entry := FIELDS.get(name):
+            item.comment(entry.help)
+        table.add(name, item)
+    return table
+
+
+def _carry_tables(scenario: Scenario, folder: Path, file: str) -> None:
+    """Copy the tables to another folder, unless they are there already."""
+    if not scenario.sections or (scenario.folder and scenario.folder.resolve() == folder):
+        return
+    for name, files in scenario.sections.items():
+        key = f'sections."{name}"'
+        if scenario.folder is None:
+            raise ScenarioError(file, key, "has tables of which the folder is not known")
+        _require_unchanged(files, scenario.folder, file=file, key=key)
+        for entry in TABLE_KEYS:
+            relative = getattr(files, entry)
+            source, target = scenario.folder / relative, folder / relative
+            if not target.resolve().is_relative_to(folder):
+                raise ScenarioError(
+                    file, f"{key}.{entry}", f"cannot be copied: {relative} leads out of the folder"
+                )
+            data = source.read_bytes()
+            if not target.exists():
+                target.parent.mkdir(parents=True, exist_ok=True)
+                _replace(target, data)
+            elif target.read_bytes() != data:
+                raise ScenarioError(
+                    file,
+                    f"{key}.{entry}",
+                    f"cannot be copied: the folder has another file named {relative}; "
+                    "save into another folder",
+                )
+
+
+def _require_unchanged(files: SectionFiles, folder: Path, *, file: str, key: str) -> None:
+    paths = {entry: folder / getattr(files, entry) for entry in TABLE_KEYS}
+    if read_section_tables(paths, file=file, key=key) != files.tables:
+        raise ScenarioError(
+            file, key, "cannot be copied: its tables have changed on disk since they were read"
+        )
+
+
+def _replace(target: Path, data: bytes) -> None:
+    """Put a file in place in one step, on the disk before it has its name."""
+    temporary = target.with_name(f".{target.name[:60]}.{secrets.token_hex(8)}.part")
+    # Not tempfile, which would leave the saved file readable by its owner only.
+    handle = os.open(temporary, os.O_WRONLY | os.O_CREAT | os.O_EXCL, 0o666)
+    try:
+        with os.fdopen(handle, "wb") as stream:
+            stream.write(data)
+            stream.flush()
+            os.fsync(stream.fileno())
+        if target.exists():
+            temporary.chmod(target.stat().st_mode & 0o777)
+        temporary.replace(target)
+    except BaseException:
+        temporary.unlink(missing_ok=True)
+        raise
