@@ -312,7 +312,7 @@ def _solve(arguments: argparse.Namespace) -> int:
 
 def _answer(scenario: Scenario, file: str) -> Results:
     from app.scenario import FIELDS
-    from app.scenario_file import input_refusal
+    from app.scenario_error import input_refusal
     from solver.errors import InputError
 
     try:

@@ -2,7 +2,8 @@
 
 from __future__ import annotations
 
-from app.scenario_fields import GROUPS, Field, field_list
+from app.scenario_fields import Field, field_list
+from app.scenario_groups import GROUPS
 
 
 def allowed(entry: Field) -> str:

@@ -1,6 +1,6 @@
 """The scenario: the one thing that changes, and the door to everything computed.
 
-Its groups of parameters are written in :mod:`app.scenario_fields`, the rules
+Its groups of parameters are written in :mod:`app.scenario_groups`, the rules
 between fields in :mod:`app.scenario_rules`. What is computed starts from
 :meth:`Scenario.freeze`.
 """
@@ -31,22 +31,13 @@ from app.inputs import (
     TailInputs,
     WingInputs,
 )
-from app.scenario_fields import (
-    FIELDS,
-    GROUPS,
-    Balance,
-    Body,
-    Brief,
-    Field,
-    Propulsion,
-    Tail,
-    Wing,
-    field_list,
-)
+from app.scenario_fields import FIELDS, Field, field_list
+from app.scenario_groups import GROUPS, Balance, Body, Brief, Propulsion, Tail, Wing
 from app.scenario_rules import Oddity, oddities, require_rules
 from solver.errors import InputError
 
 __all__ = [
+    "FIELDS",
     "GROUPS",
     "Balance",
     "Body",

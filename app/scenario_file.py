@@ -16,9 +16,19 @@ from pathlib import Path, PurePosixPath
 from typing import Any
 
 from app.inputs import SectionTables
-from app.scenario import FIELDS, GROUPS, Scenario, SectionFiles, nearest
+from app.scenario import FIELDS, GROUPS, Scenario, SectionFiles
+from app.scenario_error import (
+    ScenarioError,
+    ascii_safe,
+    input_refusal,
+    quoted,
+    shown,
+    unknown,
+)
 from app.tables import TableError, read_drag_table, read_lift_table, read_outline_table
 from solver.errors import InputError
+
+__all__ = ["ScenarioError", "read_scenario", "scenario_from_text"]
 
 SCHEMA = 1
 LARGEST_FILE = 1_000_000
@@ -29,29 +39,10 @@ TABLE_KEYS = ("outline", "lift", "drag")
 TEXTS = {"name": 120, "author": 200, "note": 20_000}
 """The texts of ``[scenario]`` and their largest lengths [characters]."""
 
+_LONG_KEY = re.compile(r"""(?<![\w"'-])(?:(?:[\w-]++|"[^"\n]*+"|'[^'\n]*+')[ \t]*+\.[ \t]*+){40}""")
+"""Forty names joined by dots: no key of ours, and the parser's time grows with their square."""
+
 TABLES = ("scenario", *GROUPS, "sections")
-
-
-class ScenarioError(ValueError):
-    """A scenario file that cannot be used, in one sentence.
-
-    Parameters
-    ----------
-    file : str
-        The file, as the user named it.
-    key : str
-        The dotted key at fault; empty when it is the file as a whole.
-    message : str
-        What is wrong and what is allowed, to follow file and key.
-    """
-
-    def __init__(self, file: str, key: str, message: str) -> None:
-        self.file, self.key, self.message = file, key, message
-        super().__init__(f"{file}: {key} {message}" if key else f"{file} {message}")
-
-    def __reduce__(self) -> tuple[type, tuple[str, str, str]]:
-        # Without this the error does not survive a process boundary.
-        return type(self), (self.file, self.key, self.message)
 
 
 def read_scenario(path: str | Path) -> Scenario:
@@ -121,54 +112,6 @@ def scenario_from_text(text: str, *, file: str, folder: Path) -> Scenario:
     return scenario
 
 
-def input_refusal(error: InputError, file: str) -> ScenarioError:
-    """Word a refused field as a fault of the file.
-
-    Parameters
-    ----------
-    error : InputError
-        Its name is a field of the scenario.
-    file : str
-        What the sentence calls the file.
-
-    Returns
-    -------
-    ScenarioError
-        With the dotted key of the field.
-    """
-    entry = FIELDS.get(error.name)
-    key = f"{entry.group}.{entry.name}" if entry else error.name
-    return ScenarioError(file, key, f"must be {error.requirement}; got {shown(error.value)}")
-
-
-def shown(value: object) -> str:
-    """Show a value in a sentence: as TOML would, on one line, cut when long.
-
-    Parameters
-    ----------
-    value : object
-        Anything that TOML can hold.
-
-    Returns
-    -------
-    str
-        At most about 60 characters.
-    """
-    if isinstance(value, bool):
-        return str(value).lower()
-    if isinstance(value, Mapping):
-        return "a table"
-    if isinstance(value, list):
-        return "a list"
-    text = ascii_safe(value) if isinstance(value, str) else f"{value}"
-    return text if len(text) <= 60 else f"{text[:57]}..."
-
-
-def ascii_safe(text: str) -> str:
-    """Quote a text so that no control character reaches a terminal."""
-    return repr(text[:80])
-
-
 def _read_text(path: Path) -> str:
     file = str(path)
     if "\0" in file:
@@ -212,13 +155,18 @@ def _too_large(file: str, size: int) -> ScenarioError:
 
 
 def _parse(text: str, file: str) -> dict[str, Any]:
+    if found := _LONG_KEY.search(text):
+        line = text.count("\n", 0, found.start()) + 1
+        raise ScenarioError(
+            file, "", f"is nested too deeply in line {line}; keys have at most three parts"
+        )
     try:
         return tomllib.loads(text)
     except RecursionError:
         raise ScenarioError(
             file, "", "is nested too deeply; a scenario has tables and keys only"
         ) from None
-    except ValueError as error:
+    except tomllib.TOMLDecodeError as error:
         found = re.fullmatch(r"(.*?)\s*\(at (.*)\)", str(error).splitlines()[0])
         what, where = found.groups() if found else (str(error).splitlines()[0], "")
         if where == "end of document":
@@ -227,6 +175,10 @@ def _parse(text: str, file: str) -> dict[str, Any]:
         raise ScenarioError(
             file, "", f"is not TOML{place}: {what[:1].lower()}{what[1:]}"
         ) from error
+    except ValueError:
+        raise ScenarioError(
+            file, "", "has a whole number with thousands of digits, which is not read"
+        ) from None
 
 
 def _require_schema(content: Mapping[str, Any], file: str) -> None:
@@ -239,7 +191,7 @@ def _require_schema(content: Mapping[str, Any], file: str) -> None:
         raise ScenarioError(
             file,
             "schema",
-            f"must be {SCHEMA}; got {schema}, which a newer Halfspan has written",
+            f"must be {SCHEMA}; got {shown(schema)}, which a newer Halfspan has written",
         )
     if type(schema) is not int or schema != SCHEMA:
         raise ScenarioError(file, "schema", f"must be {SCHEMA}; got {shown(schema)}")
@@ -250,27 +202,9 @@ def _require_tables(content: Mapping[str, Any], file: str) -> None:
         if name == "schema":
             continue
         if name not in TABLES:
-            raise _unknown(file, "", name, TABLES)
+            raise unknown(file, "", name, TABLES)
         if not isinstance(value, Mapping):
-            raise ScenarioError(file, _quoted(name), f"must be a table; got {shown(value)}")
-
-
-def _unknown(file: str, table: str, name: str, known: tuple[str, ...]) -> ScenarioError:
-    dotted = f"{table}.{_quoted(name)}" if table else _quoted(name)
-    if (entry := FIELDS.get(name)) and entry.group != table:
-        return ScenarioError(file, dotted, f"is in the wrong place; it belongs in [{entry.group}]")
-    kind = "key" if table else "table"
-    guess = nearest(name, known)
-    allowed = f"there are {', '.join(known)}" if len(known) < 12 or not guess else ""
-    allowed = allowed or "`halfspan fields` lists all"
-    return ScenarioError(file, dotted, f"is not a known {kind}{guess}; {allowed}")
-
-
-def _quoted(name: str) -> str:
-    """Write a key as TOML would: quoted unless it is a bare word."""
-    if re.fullmatch(r"[A-Za-z0-9_-]{1,60}", name):
-        return name
-    return '"' + ascii_safe(name if len(name) <= 60 else f"{name[:57]}...")[1:-1] + '"'
+            raise ScenarioError(file, quoted(name), f"must be a table; got {shown(value)}")
 
 
 def _texts(table: Mapping[str, Any], file: str) -> dict[str, str]:
@@ -278,7 +212,7 @@ def _texts(table: Mapping[str, Any], file: str) -> dict[str, str]:
     for name, value in table.items():
         key = f"scenario.{name}"
         if name not in TEXTS:
-            raise _unknown(file, "scenario", name, tuple(TEXTS))
+            raise unknown(file, "scenario", name, tuple(TEXTS))
         if not isinstance(value, str):
             raise ScenarioError(file, key, f"must be a text; got {shown(value)}")
         if problem := text_problem(name, value):
@@ -310,6 +244,8 @@ def text_problem(name: str, value: str) -> str:
     allowed = "\n\t" if name == "note" else ""
     if any(not (letter.isprintable() or letter in allowed) for letter in value):
         return f"must have no control characters; got {shown(value)}"
+    if _LONG_KEY.search(value):
+        return "must not have forty words joined by dots"
     return ""
 
 
@@ -318,7 +254,7 @@ def _values(content: Mapping[str, Any], file: str) -> Iterator[tuple[str, object
         known = tuple(cls.__annotations__)
         for name, value in content.get(group, {}).items():
             if name not in known:
-                raise _unknown(file, group, name, known)
+                raise unknown(file, group, name, known)
             yield name, value
 
 
@@ -330,14 +266,14 @@ def _sections(
             file, "sections", f"must have at most {MOST_SECTIONS} tables; got {len(tables)}"
         )
     for name, table in tables.items():
-        key = f"sections.{_quoted(name)}"
+        key = f"sections.{quoted(name)}"
         if not name.strip() or len(name) > 80 or not name.isprintable():
             raise ScenarioError(file, key, "must have a printable name of 1 to 80 characters")
         if not isinstance(table, Mapping):
             raise ScenarioError(file, key, f"must be a table; got {shown(table)}")
         for entry in table:
             if entry not in TABLE_KEYS:
-                raise _unknown(file, key, entry, TABLE_KEYS)
+                raise unknown(file, key, entry, TABLE_KEYS)
         yield name, _section(table, file, key, folder)
 
 

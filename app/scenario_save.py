@@ -19,12 +19,11 @@ from tomlkit.exceptions import TOMLKitError
 from tomlkit.items import Item, Table
 
 from app.scenario import FIELDS, GROUPS, Scenario, SectionFiles
+from app.scenario_error import ScenarioError, input_refusal
 from app.scenario_file import (
     SCHEMA,
     TABLE_KEYS,
     TEXTS,
-    ScenarioError,
-    input_refusal,
     read_section_tables,
     text_problem,
 )
