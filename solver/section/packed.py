@@ -1,0 +1,399 @@
+"""Polars packed into cubics on a common grid: what a wing takes, and nothing else.
+
+See :mod:`solver.section.hermite` for the order of the two slopes.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+from typing import Any, Final
+
+import numpy as np
+from numpy.typing import ArrayLike, NDArray
+
+from solver.errors import InputError, require_positive
+from solver.section.hermite import cell_coefficients, line_coefficients
+from solver.section.pack_columns import ANGLE_LIMIT, SOFT_STOP, PackedSection, pack_section
+from solver.section.polar import Polar
+
+FloatArray = NDArray[np.float64]
+BoolArray = NDArray[np.bool_]
+TrustArray = NDArray[np.uint8]
+
+LOW: Final = 0
+NOMINAL: Final = 1
+HIGH: Final = 2
+"""Ends of the confidence band, the first index of every packed array."""
+
+VALID, EXTRAPOLATED, INDICATIVE = 0, 1, 2
+
+ANGLE_STEP = np.radians(0.25)
+
+
+@dataclass(frozen=True, eq=False)
+class SectionValues:
+    """Coefficients and their slopes over angle; all of one broadcast shape.
+
+    Fields
+    ------
+    lift, drag, moment : ndarray
+        [-]
+    lift_slope, drag_slope, moment_slope : ndarray
+        [1/rad]
+    """
+
+    lift: FloatArray
+    lift_slope: FloatArray
+    drag: FloatArray
+    drag_slope: FloatArray
+    moment: FloatArray
+    moment_slope: FloatArray
+
+
+@dataclass(frozen=True, eq=False)
+class SectionLimits:
+    """Where sections stall; all of one broadcast shape.
+
+    Fields
+    ------
+    largest_lift : ndarray
+        First attached peak [-].
+    knee_angle, peak_angle : ndarray
+        98 % of it, and its own angle [rad].
+    """
+
+    largest_lift: FloatArray
+    knee_angle: FloatArray
+    peak_angle: FloatArray
+
+
+@dataclass(frozen=True, eq=False)
+class PackedPolars:
+    """Sections on one grid of angle and Reynolds number, once differentiable.
+
+    Fields
+    ------
+    names : tuple of str
+        Of the sections, in the order of their index.
+    angle : ndarray, shape (na,)
+        Equally spaced [rad].
+    reynolds : ndarray, shape (nr,)
+        Every tabled one of every section, so that each is met exactly [-].
+    cells : ndarray, shape (3 * sections * (na - 1) * (nr - 1), 48)
+        Bicubic coefficients: powers of Reynolds number, of angle, quantity.
+    limit_lines : ndarray, shape (3, sections, nr - 1, 3, 4)
+        Cubic coefficients of the three limits over Reynolds number.
+    largest_lift, knee_angle, peak_angle : ndarray, shape (3, sections, nr)
+        The limits at the nodes [-], [rad], [rad].
+    zero_lift_angle : ndarray, shape (3, sections, nr)
+        The same at every end of the band [rad].
+    known : ndarray of bool, shape (sections, nr)
+        The Reynolds number lies within the section's table.
+    in_cliff : ndarray of bool, shape (sections, nr - 1)
+        The interval above this node is one whose lift is unknown.
+    valid_low, valid_high, stall_low, stall_high : ndarray, shape (sections, nr)
+        Ends of the tabled angles; angles past which the section has stalled [rad].
+    lowest_reynolds, highest_reynolds : ndarray, shape (sections,)
+        Ends of the section's table [-].
+    estimated : ndarray of bool, shape (sections,)
+    unknown : tuple, one entry a section, of tuples of (float, float)
+        Reynolds numbers between which largest lift jumps.
+    recovery : ndarray, shape (sections, nr)
+        After a stall come below this angle, NaN where none was measured [rad].
+    """
+
+    names: tuple[str, ...]
+    angle: FloatArray
+    reynolds: FloatArray
+    cells: FloatArray
+    limit_lines: FloatArray
+    largest_lift: FloatArray
+    knee_angle: FloatArray
+    peak_angle: FloatArray
+    zero_lift_angle: FloatArray
+    known: BoolArray
+    in_cliff: BoolArray
+    valid_low: FloatArray
+    valid_high: FloatArray
+    stall_low: FloatArray
+    stall_high: FloatArray
+    lowest_reynolds: FloatArray
+    highest_reynolds: FloatArray
+    estimated: BoolArray
+    unknown: tuple[tuple[tuple[float, float], ...], ...]
+    recovery: FloatArray
+
+    def evaluate(
+        self,
+        angle: ArrayLike,
+        reynolds: ArrayLike,
+        *,
+        band: ArrayLike = NOMINAL,
+        section: ArrayLike = 0,
+    ) -> SectionValues:
+        """Coefficients and their slopes over angle.
+
+        Parameters
+        ----------
+        angle : array_like
+            [rad]; past 30 degrees it is taken smoothly to at most 32.
+        reynolds : array_like
+            [-]; past the ends of the grid the end is held.
+        band : array_like of int
+            :data:`LOW`, :data:`NOMINAL` or :data:`HIGH`.
+        section : array_like of int
+            Index into `names`.
+
+        Returns
+        -------
+        SectionValues
+            Of the broadcast shape of all four. Finite for every finite angle; NaN
+            passes through. The slopes are the derivatives of the values.
+        """
+        a, stretch = _soft_stop(np.asarray(angle, dtype=np.float64))
+        place = (a - self.angle[0]) * ((self.angle.size - 1) / (self.angle[-1] - self.angle[0]))
+        row = np.fmin(np.fmax(place, 0.0), self.angle.size - 2.0).astype(np.intp)
+        column, v = self._along_reynolds(np.asarray(reynolds, dtype=np.float64))
+        first = np.asarray(band, dtype=np.intp) * len(self.names) + np.asarray(section)
+        cell = (first * (self.angle.size - 1) + row) * (self.reynolds.size - 1) + column
+        shape = np.broadcast_shapes(cell.shape, place.shape)
+        flat = np.broadcast_to(cell, shape).reshape(-1)
+        u = np.broadcast_to(place - row, shape).reshape(-1, 1)
+        v = np.broadcast_to(v, shape).reshape(-1, 1)
+        c = self.cells.take(flat, axis=0)
+        t = ((c[:, 36:] * v + c[:, 24:36]) * v + c[:, 12:24]) * v + c[:, :12]
+        c0, c1, c2, c3 = t[:, :3], t[:, 3:6], t[:, 6:9], t[:, 9:]
+        value = ((c3 * u + c2) * u + c1) * u + c0
+        slope = (3.0 * c3 * u + 2.0 * c2) * u + c1
+        per_radian = (self.angle.size - 1) / (self.angle[-1] - self.angle[0])
+        value, slope = value.reshape(*shape, 3), slope.reshape(*shape, 3) * per_radian
+        if stretch is not None:
+            slope = slope * stretch[..., None]
+        return SectionValues(
+            lift=value[..., 0],
+            lift_slope=slope[..., 0],
+            drag=value[..., 1],
+            drag_slope=slope[..., 1],
+            moment=value[..., 2],
+            moment_slope=slope[..., 2],
+        )
+
+    def limits(
+        self, reynolds: ArrayLike, *, band: ArrayLike = NOMINAL, section: ArrayLike = 0
+    ) -> SectionLimits:
+        """Largest lift and its angles.
+
+        Parameters
+        ----------
+        reynolds : array_like
+            [-]
+        band, section : array_like of int
+            As in :meth:`evaluate`.
+
+        Returns
+        -------
+        SectionLimits
+            Of the broadcast shape of all three.
+        """
+        column, v = self._along_reynolds(np.asarray(reynolds, dtype=np.float64))
+        band, section, column, v = np.broadcast_arrays(band, section, column, v)
+        c = self.limit_lines[band, section, column]
+        w = v[..., None]
+        found = ((c[..., 3] * w + c[..., 2]) * w + c[..., 1]) * w + c[..., 0]
+        return SectionLimits(
+            largest_lift=found[..., 0], knee_angle=found[..., 1], peak_angle=found[..., 2]
+        )
+
+    def trust(self, angle: ArrayLike, reynolds: ArrayLike, *, section: ArrayLike = 0) -> TrustArray:
+        """How far the values at an angle and a Reynolds number can be believed.
+
+        Parameters
+        ----------
+        angle, reynolds : array_like
+            [rad], [-]
+        section : array_like of int
+
+        Returns
+        -------
+        ndarray of uint8
+            0 within the data, 1 outside the tabled angles or Reynolds numbers or in
+            an interval that is unknown, 2 beyond stall on either side.
+        """
+        a, re = np.asarray(angle, dtype=np.float64), np.asarray(reynolds, dtype=np.float64)
+        column, v = self._along_reynolds(re)
+        a, re, section, column, v = np.broadcast_arrays(a, re, section, column, v)
+
+        def at(values: FloatArray) -> FloatArray:
+            low, high = values[section, column], values[section, column + 1]
+            return np.asarray(np.where(v == 0.0, low, low + v * (high - low)))
+
+        outside = (a < at(self.valid_low)) | (a > at(self.valid_high))
+        outside |= (re < self.lowest_reynolds[section]) | (re > self.highest_reynolds[section])
+        outside |= self.in_cliff[section, column]
+        stalled = (a < at(self.stall_low)) | (a > at(self.stall_high))
+        return np.where(stalled, INDICATIVE, np.where(outside, EXTRAPOLATED, VALID)).astype(
+            np.uint8
+        )
+
+    def in_unknown(self, reynolds: ArrayLike, *, section: ArrayLike = 0) -> BoolArray:
+        """Tell whether largest lift is unknown because it jumps between two runs.
+
+        Parameters
+        ----------
+        reynolds : array_like
+            [-]
+        section : array_like of int
+
+        Returns
+        -------
+        ndarray of bool
+        """
+        column, _ = self._along_reynolds(np.asarray(reynolds, dtype=np.float64))
+        return np.asarray(self.in_cliff[np.asarray(section), column])
+
+    def _along_reynolds(self, reynolds: FloatArray) -> tuple[NDArray[np.intp], FloatArray]:
+        held = np.minimum(np.maximum(reynolds, self.reynolds[0]), self.reynolds[-1])
+        column = np.minimum(
+            np.searchsorted(self.reynolds, held, side="right") - 1, self.reynolds.size - 2
+        )
+        low, high = self.reynolds[column], self.reynolds[column + 1]
+        return column, np.log(held / low) / np.log(high / low)
+
+
+def _soft_stop(angle: FloatArray) -> tuple[FloatArray, FloatArray | None]:
+    """Take angles beyond the limit smoothly to the end of the grid."""
+    over = np.abs(angle) - ANGLE_LIMIT
+    if not np.any(over > 0.0):
+        return angle, None
+    bend = np.tanh(np.maximum(over, 0.0) / SOFT_STOP)
+    held = np.where(over > 0.0, np.sign(angle) * (ANGLE_LIMIT + SOFT_STOP * bend), angle)
+    return held, 1.0 - np.square(bend)
+
+
+def pack_polars(
+    polars: Sequence[Polar],
+    *,
+    drag_factor: float = 1.0,
+    largest_lift_debit: float = 0.0,
+    hold_at_reynolds: float | None = None,
+    angle_step: float = ANGLE_STEP,
+) -> PackedPolars:
+    """Pack sections for a wing.
+
+    Parameters
+    ----------
+    polars : sequence of Polar
+        One or more.
+    drag_factor : float
+        Multiplies all drag [-], > 0: finish and build quality.
+    largest_lift_debit : float
+        Taken off the largest lift on both sides [-], >= 0: finish.
+    hold_at_reynolds : float, optional
+        Every lift curve and its limits are those at this Reynolds number, taken to
+        the highest tabled one: infinity asks what a high Reynolds number would do.
+    angle_step : float
+        Of the grid [rad]; the next that divides its range is used.
+
+    Returns
+    -------
+    PackedPolars
+
+    Raises
+    ------
+    InputError
+        If there is no polar, or a number is out of its range.
+
+    Notes
+    -----
+    Outside a section's Reynolds numbers its end curves are held, and the confidence
+    half-widths grow. Between two runs whose largest lift jumps, the curves of the
+    lower one hold over the whole interval and change over within its last per cent.
+    """
+    if not polars:
+        raise InputError("polars", polars, "one section or more")
+    require_positive(drag_factor=drag_factor, angle_step=angle_step)
+    if not (np.isfinite(largest_lift_debit) and largest_lift_debit >= 0.0):
+        raise InputError("largest_lift_debit", largest_lift_debit, "finite and >= 0")
+    if hold_at_reynolds is not None and not hold_at_reynolds > 0.0:
+        raise InputError("hold_at_reynolds", hold_at_reynolds, "> 0")
+    end = ANGLE_LIMIT + SOFT_STOP
+    angle = np.linspace(-end, end, 2 * int(np.ceil(end / angle_step - 1e-9)) + 1)
+    packed = [
+        pack_section(
+            polar,
+            angle,
+            drag_factor=drag_factor,
+            largest_lift_debit=largest_lift_debit,
+            hold_at_reynolds=hold_at_reynolds,
+        )
+        for polar in polars
+    ]
+    nodes = np.unique(np.concatenate([section.log_reynolds for section in packed]))
+    return _assemble(polars, packed, angle, np.exp(nodes), nodes)
+
+
+def _assemble(
+    polars: Sequence[Polar],
+    packed: Sequence[PackedSection],
+    angle: FloatArray,
+    reynolds: FloatArray,
+    nodes: FloatArray,
+) -> PackedPolars:
+    step = float(angle[1] - angle[0])
+    cells, lines = [], []
+    for section in packed:
+        value, slope, over_re, cross = section.surfaces_at(nodes)
+        lines.append(line_coefficients(*section.limits_at(nodes), nodes))
+        cells.append(
+            cell_coefficients(value, slope, over_re, cross, angle_step=step, log_reynolds=nodes)
+        )
+    # Sections in front, then band: (sections, na-1, nr-1, band, quantity, v, u).
+    stacked = np.stack(cells).transpose(3, 0, 1, 2, 5, 6, 4)
+    line = np.stack(lines).transpose(2, 0, 1, 3, 4)
+    limits = np.stack([section.limits_at(nodes)[0] for section in packed]).transpose(2, 0, 1, 3)
+    return PackedPolars(
+        names=tuple(polar.name for polar in polars),
+        angle=angle,
+        reynolds=reynolds,
+        cells=np.ascontiguousarray(stacked).reshape(-1, 48),
+        limit_lines=np.ascontiguousarray(line),
+        largest_lift=limits[..., 0],
+        knee_angle=limits[..., 1],
+        peak_angle=limits[..., 2],
+        **_ranges(polars, packed, nodes),
+    )
+
+
+def _ranges(
+    polars: Sequence[Polar], packed: Sequence[PackedSection], nodes: FloatArray
+) -> dict[str, Any]:
+    """Fields of :class:`PackedPolars` that say how far each section's data reach."""
+    reynolds = np.exp(nodes)
+    middle = np.sqrt(reynolds[1:] * reynolds[:-1])
+    lowest = np.array([polar.reynolds[0] for polar in polars])
+    highest = np.array([polar.reynolds[-1] for polar in polars])
+    cliff = np.zeros((len(polars), middle.size), dtype=np.bool_)
+    for row, section in zip(cliff, packed, strict=True):
+        for low, high in section.unknown:
+            row |= (middle > low) & (middle < high)
+
+    def table(name: str) -> FloatArray:
+        return np.stack([section.row_at(name, nodes) for section in packed])
+
+    near = 1e-9
+    return {
+        "zero_lift_angle": np.repeat(table("zero_lift_angle")[None], 3, axis=0),
+        "known": (reynolds >= lowest[:, None] * (1 - near))
+        & (reynolds <= highest[:, None] * (1 + near)),
+        "in_cliff": cliff,
+        "valid_low": table("valid_low"),
+        "valid_high": table("valid_high"),
+        "stall_low": table("stall_low"),
+        "stall_high": table("stall_high"),
+        "recovery": table("recovery"),
+        "lowest_reynolds": lowest,
+        "highest_reynolds": highest,
+        "estimated": np.array([polar.estimated for polar in polars]),
+        "unknown": tuple(section.unknown for section in packed),
+    }
