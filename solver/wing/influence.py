@@ -1,0 +1,216 @@
+"""Velocities that unit circulations induce on one another's control points.
+
+Every station carries a horseshoe: its bound segment and two legs that trail to
+infinity along the free stream, together with the mirror image on the left half.
+
+Within one surface the quarter-chord line is straightened before its own downwash
+is taken: on a swept line straight horseshoes with control points on the line do
+not converge as they shrink. What sweep changes is added from
+:mod:`solver.wing.sweep`. Between surfaces the true positions hold.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import ArrayLike, NDArray
+
+from solver.wing.planform import Lattice
+from solver.wing.sweep import sweep_upwash
+
+FloatArray = NDArray[np.float64]
+
+CORE_FRACTION = 0.35
+"""Vortex core radius over the spacing of the trailing legs, between surfaces only.
+
+Chosen so that a tail that moves through the wing's sheet of discrete legs sees
+no single leg; a test holds that the results do not depend on it.
+"""
+
+
+@dataclass(frozen=True, eq=False)
+class Influence:
+    """Linear maps from circulations to what the lifting line needs.
+
+    A circulation g is divided by the free-stream speed and has the unit of a
+    length. Arrays have shape (..., n, n): row, the station acted upon.
+
+    Fields
+    ------
+    wake_angle : ndarray, shape (...)
+        Angle of free stream and wake above the x axis [rad].
+    upwash : ndarray
+        Angle by which the flow is raised at a control point per unit g [1/m].
+    force_x, force_z : ndarray
+        (v x segment) along x and z per unit g; v is the induced velocity over the
+        free-stream speed [-].
+    onset : ndarray, shape (..., n)
+        Angle between the free stream and the x axis in the plane of each section,
+        without twist [rad].
+    onset_slope : ndarray, shape (..., n)
+        Its derivative with the angle of attack [-].
+    """
+
+    wake_angle: FloatArray
+    upwash: FloatArray
+    force_x: FloatArray
+    force_z: FloatArray
+    onset: FloatArray
+    onset_slope: FloatArray
+
+    def case(self, index: int) -> Influence:
+        """One case of a batch along its first axis.
+
+        Parameters
+        ----------
+        index : int
+
+        Returns
+        -------
+        Influence
+        """
+        return Influence(*(getattr(self, name)[index] for name in self.__dataclass_fields__))
+
+
+def influence(
+    lattice: Lattice, *, wake_angle: ArrayLike, core_fraction: float = CORE_FRACTION
+) -> Influence:
+    """Evaluate the influence of every station on every other.
+
+    Parameters
+    ----------
+    lattice : Lattice
+        Batch shape B.
+    wake_angle : array_like, shape (...)
+        Angle of attack along which the wake trails; broadcasts with B. [rad]
+    core_fraction : float
+        Core radius over leg spacing for legs that pass another surface. [-] >= 0.
+
+    Returns
+    -------
+    Influence
+        Arrays of the broadcast batch shape.
+
+    Notes
+    -----
+    Horseshoe velocity after Phillips and Snyder [1]_, eq. (5), written with
+    h^2 = |u x r|^2 so that it loses no digits downstream. A station's own bound
+    segment induces nothing on its own control point. Legs that pass another
+    surface are given the core of Vatistas [2]_ with n = 2: the velocity 1/h
+    becomes h/(h^4 + r_c^4)^(1/2).
+
+    The angle of the induced flow is taken to first order, v . m with m across
+    the free stream in the plane of the section: Prandtl's own linearisation, for
+    which the published span loadings hold exactly. The forces use the straightened
+    line too, which Munk's stagger theorem allows: moving a surface's own vorticity
+    along the stream changes where its induced drag acts, not how much it is.
+
+    References
+    ----------
+    .. [1] W. F. Phillips, D. O. Snyder, J. Aircraft 37(4), 2000, 662-670.
+    .. [2] G. H. Vatistas, V. Kozel, W. C. Mih, Experiments in Fluids 11, 1991, 73-76.
+    .. [3] M. M. Munk, The Minimum Induced Drag of Aerofoils, NACA Report 121, 1921.
+    """
+    angle = np.asarray(wake_angle, dtype=np.float64)
+    batch = np.broadcast_shapes(angle.shape, lattice.width.shape[:-1])
+    angle = np.broadcast_to(angle, batch)
+    stream = np.stack([np.cos(angle), np.zeros(batch), np.sin(angle)], axis=-1)
+    velocity = _mirrored_velocity(lattice, stream, core_fraction)
+    vx, vy, vz = velocity
+
+    normal = lattice.normal
+    cosine, sine = np.cos(angle)[..., None], np.sin(angle)[..., None]
+    # Direction across the free stream in the plane of each section.
+    along = normal[..., 2] * sine
+    mx, my, mz = -along * cosine, normal[..., 1], normal[..., 2] - along * sine
+    size = np.sqrt(mx**2 + my**2 + mz**2)
+    mx, my, mz = mx / size, my / size, mz / size
+    upwash = vx * mx[..., None] + vy * my[..., None] + vz * mz[..., None]
+    upwash = upwash + sweep_upwash(lattice)
+
+    segment = lattice.segment
+    lx, ly, lz = (segment[..., k][..., None] for k in range(3))
+    lx = lx * (lattice.surface[:, None] != lattice.surface[None, :])
+    lift_share = normal[..., 2]
+    return Influence(
+        wake_angle=angle,
+        upwash=upwash,
+        force_x=vy * lz - vz * ly,
+        force_z=vx * ly - vy * lx,
+        onset=np.arctan2(lift_share * sine, cosine),
+        onset_slope=lift_share / (cosine**2 + (lift_share * sine) ** 2),
+    )
+
+
+def _mirrored_velocity(
+    lattice: Lattice, stream: FloatArray, core_fraction: float
+) -> tuple[FloatArray, FloatArray, FloatArray]:
+    """Velocity at each control point from each horseshoe and its mirror image."""
+    core = _core_radius(lattice, core_fraction)
+    right = _horseshoes(lattice, lattice.point, stream, core, own=True)
+    mirrored = lattice.point * np.array([1.0, -1.0, 1.0])
+    left = _horseshoes(lattice, mirrored, stream, core, own=False)
+    return right[0] + left[0], right[1] - left[1], right[2] + left[2]
+
+
+def _core_radius(lattice: Lattice, core_fraction: float) -> FloatArray:
+    """Core radius of each station's legs at each point, zero on the own surface."""
+    other = lattice.surface[:, None] != lattice.surface[None, :]
+    widest = np.zeros(lattice.width.shape)
+    for index in np.unique(lattice.surface):
+        of_surface = lattice.surface == index
+        widest[..., of_surface] = lattice.width[..., of_surface].max(axis=-1, keepdims=True)
+    return np.asarray(core_fraction * widest[..., None, :] * other)
+
+
+def _horseshoes(
+    lattice: Lattice, point: FloatArray, stream: FloatArray, core: FloatArray, *, own: bool
+) -> tuple[FloatArray, FloatArray, FloatArray]:
+    """Components of the velocity at `point` from the right half's horseshoes."""
+    a = _displacement(point, lattice.inner, lattice)
+    b = _displacement(point, lattice.outer, lattice)
+    length_a = np.sqrt(a[0] ** 2 + a[1] ** 2 + a[2] ** 2)
+    length_b = np.sqrt(b[0] ** 2 + b[1] ** 2 + b[2] ** 2)
+    leg_a = _leg(a, length_a, stream, core)
+    leg_b = _leg(b, length_b, stream, core)
+
+    dot = a[0] * b[0] + a[1] * b[1] + a[2] * b[2]
+    product = length_a * length_b
+    denominator = product * (product + dot)
+    if own:
+        diagonal = np.arange(point.shape[-2])
+        denominator[..., diagonal, diagonal] = np.inf
+    bound = (length_a + length_b) / denominator
+    cross = (
+        a[1] * b[2] - a[2] * b[1],
+        a[2] * b[0] - a[0] * b[2],
+        a[0] * b[1] - a[1] * b[0],
+    )
+    scale = 0.25 / np.pi
+    vx, vy, vz = (scale * (leg_b[k] - leg_a[k] + bound * cross[k]) for k in range(3))
+    return vx, vy, vz
+
+
+def _displacement(
+    point: FloatArray, end: FloatArray, lattice: Lattice
+) -> tuple[FloatArray, FloatArray, FloatArray]:
+    """Vector from segment ends to points, each surface's own line straightened."""
+    other = lattice.surface[:, None] != lattice.surface[None, :]
+    dx, dy, dz = (point[..., :, None, k] - end[..., None, :, k] for k in range(3))
+    return dx * other, dy, dz
+
+
+def _leg(
+    r: tuple[FloatArray, FloatArray, FloatArray],
+    length: FloatArray,
+    stream: FloatArray,
+    core: FloatArray,
+) -> tuple[FloatArray, FloatArray, FloatArray]:
+    """Velocity, times 4 pi, of a leg that trails along the stream from its head."""
+    ux, uz = stream[..., 0][..., None, None], stream[..., 2][..., None, None]
+    cross = (-uz * r[1], uz * r[0] - ux * r[2], ux * r[1])
+    distance_squared = cross[0] ** 2 + cross[1] ** 2 + cross[2] ** 2
+    spread = np.sqrt(distance_squared**2 + core**4)
+    factor = (length + ux * r[0] + uz * r[2]) / (length * spread)
+    return factor * cross[0], factor * cross[1], factor * cross[2]
