@@ -9,7 +9,7 @@ from __future__ import annotations
 import json
 import math
 import re
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from dataclasses import fields
 from enum import IntEnum, StrEnum
 from typing import Any
@@ -44,7 +44,7 @@ _PLAIN_TYPES = frozenset(
 )
 
 
-def answer_json(results: Results, *, version: str) -> str:
+def answer_json(results: Results, *, version: str, oddities: Sequence[str] = ()) -> str:
     """Write an analysis as JSON.
 
     Parameters
@@ -53,16 +53,20 @@ def answer_json(results: Results, *, version: str) -> str:
         What was found.
     version : str
         Halfspan's version, stated in the object.
+    oddities : sequence of str
+        Sentences about inputs that are allowed but rarely meant.
 
     Returns
     -------
     str
         One JSON object, indented.
     """
-    return json.dumps(answer(results, version=version), indent=2, allow_nan=False)
+    return json.dumps(
+        answer(results, version=version, oddities=oddities), indent=2, allow_nan=False
+    )
 
 
-def answer(results: Results, *, version: str) -> dict[str, Any]:
+def answer(results: Results, *, version: str, oddities: Sequence[str] = ()) -> dict[str, Any]:
     """Collect what the JSON object says.
 
     Parameters
@@ -71,6 +75,8 @@ def answer(results: Results, *, version: str) -> dict[str, Any]:
         What was found.
     version : str
         Halfspan's version.
+    oddities : sequence of str
+        Sentences about inputs that are allowed but rarely meant.
 
     Returns
     -------
@@ -86,6 +92,7 @@ def answer(results: Results, *, version: str) -> dict[str, Any]:
         "verdict": str(worst),
         "reason": results.reason,
         "cautions": list(results.cautions),
+        "oddities": list(oddities),
         "margins": {margin_key(margin): _margin(margin) for margin in results.margins},
         "air": _scalars(results.air),
         "planform": _scalars(results.planform),

@@ -14,7 +14,6 @@ _TRUST_WORDS = {
     Trust.VALID: "",
     Trust.EXTRAPOLATED: "extrapolated",
     Trust.INDICATIVE: "indicative only",
-    Trust.NOT_CONVERGED: "not converged",
 }
 
 
@@ -69,11 +68,12 @@ def decimals(value: float) -> int:
     Returns
     -------
     int
-        0 to 4.
+        0 to 6.
     """
     if value == 0.0:
         return 2
-    return min(max(2 - math.floor(math.log10(abs(value))), 0), 4)
+    # The exponent after rounding: 9.999 is shown as 10.0.
+    return min(max(2 - int(f"{value:.2e}"[-3:]), 0), 6)
 
 
 def number(value: float, unit: str = "", *, places: int | None = None) -> str:
@@ -117,7 +117,7 @@ def _margin_table(margins: Sequence[Margin]) -> str:
 
 def _margin_row(margin: Margin) -> tuple[str, str, str, str, str, str]:
     unit = margin.unit
-    limit = f"{margin.sense} {number(margin.limit, unit)}"
+    limit = f"{margin.sense} {margin.limit:g} {unit}".rstrip()
     if not math.isfinite(margin.value):
         return margin.label, NOT_FOUND, "", limit, "", str(margin.verdict)
     places = decimals(margin.value)
@@ -154,7 +154,8 @@ def _folded(text: str, width: int, *, lead: str = "") -> str:
 
 
 def _reasons(results: Results, width: int) -> Iterator[str]:
-    if results.reason:
+    # The summary may quote one of the reasons below.
+    if not any(margin.reason and margin.reason in results.reason for margin in results.margins):
         yield _folded(results.reason, width)
     for margin in results.margins:
         if margin.reason:
@@ -167,57 +168,69 @@ def _aligned(rows: Sequence[tuple[str, str]]) -> list[str]:
 
 
 def _trusted(text: str, trust: Trust) -> str:
+    if trust == Trust.NOT_CONVERGED:
+        return NOT_FOUND
     words = _TRUST_WORDS[Trust(trust)]
     return f"{text} ({words})" if words else text
 
 
 def _figures(results: Results) -> Iterator[tuple[str, str]]:
-    landing, cruise, planform, balance = (
-        results.landing,
-        results.cruise,
-        results.planform,
-        results.balance,
-    )
-    places = decimals(landing.stall_speed_m_s) if math.isfinite(landing.stall_speed_m_s) else 1
-    low, high = sorted((landing.stall_speed_low_m_s, landing.stall_speed_high_m_s))
-    stall = number(landing.stall_speed_m_s, "m/s")
-    if math.isfinite(low) and math.isfinite(high):
-        stall += f" ({number(low, places=places)} to {number(high, places=places)})"
-    yield "Stall speed in trim", _trusted(stall, landing.trust)
-    yield "Stall begins", landing.onset_words or NOT_FOUND
-    yield (
-        "Largest lift coefficient",
-        _trusted(number(landing.largest_lift_coefficient), landing.trust),
-    )
-    for section in (one for one in results.sections if one.role != "tail"):
-        reynolds = " to ".join(f"{one:,.0f}" for one in section.landing_reynolds)
-        origin = f"{section.name}, {section.origin}"
-        yield f"Reynolds numbers at landing, {section.role}", f"{reynolds} ({origin})"
-    speed = number(cruise.speed_m_s, "m/s")
-    yield (
-        f"Lift over drag in cruise at {speed}",
-        _trusted(number(cruise.lift_to_drag), cruise.trust),
-    )
-    yield "Drag in cruise", _trusted(number(cruise.drag.total, "N"), cruise.trust)
-    yield "  induced, profile", _pair(cruise.drag.induced, cruise.drag.profile, "N")
-    trim = cruise.drag.trim_induced + cruise.drag.trim_profile
-    yield "  body, trim", _pair(cruise.drag.body, trim, "N")
-    yield "Electric power in cruise", _trusted(number(cruise.electric_power_w, "W"), cruise.trust)
-    yield (
-        "Elevator in cruise, at landing (forward)",
-        _pair(balance.elevator_cruise_deg, balance.elevator_landing_forward_deg, "deg"),
-    )
+    yield from _landing_figures(results)
+    yield from _cruise_figures(results)
+    planform, balance = results.planform, results.balance
     yield (
         "Balance point, neutral point",
-        _pair(balance.balance_percent, balance.neutral_point_percent, "% of mean chord"),
+        _several("% of mean chord", balance.balance_percent, balance.neutral_point_percent),
     )
     yield (
-        "Wing area, aspect ratio",
-        f"{number(planform.area_m2, 'm²')}, {number(planform.aspect_ratio)}",
+        "Elevator in cruise, at landing with balance forward",
+        _several("deg", balance.elevator_cruise_deg, balance.elevator_landing_forward_deg),
     )
+    yield "Wing area", number(planform.area_m2, "m²")
+    yield "Aspect ratio", number(planform.aspect_ratio)
     yield "Wing loading", number(planform.wing_loading_n_m2, "N/m²")
     yield "Air density at the field", number(results.air.density_kg_m3, "kg/m³")
 
 
-def _pair(first: float, second: float, unit: str) -> str:
-    return f"{number(first)}, {number(second)} {unit}"
+def _landing_figures(results: Results) -> Iterator[tuple[str, str]]:
+    landing = results.landing
+    stall = number(landing.stall_speed_m_s, "m/s")
+    low, high = sorted((landing.stall_speed_low_m_s, landing.stall_speed_high_m_s))
+    if all(math.isfinite(speed) for speed in (low, landing.stall_speed_m_s, high)):
+        places = decimals(landing.stall_speed_m_s)
+        stall += f", {number(low, places=places)} to {number(high, places=places)}"
+    yield "Stall speed in trim", _trusted(stall, landing.trust)
+    yield "Stall begins", _trusted(landing.onset_words or NOT_FOUND, landing.trust)
+    largest = number(landing.largest_lift_coefficient)
+    yield "Largest lift coefficient", _trusted(largest, landing.trust)
+    for section in results.sections:
+        low, high = section.landing_reynolds
+        known = math.isfinite(low) and math.isfinite(high)
+        span = f"{low:,.0f} to {high:,.0f}" if known else NOT_FOUND
+        label = f"Reynolds numbers at landing, {section.role}"
+        yield label, f"{span} ({section.name}, {section.origin})"
+
+
+def _cruise_figures(results: Results) -> Iterator[tuple[str, str]]:
+    cruise, drag = results.cruise, results.cruise.drag
+    rows = (
+        ("Lift over drag", number(cruise.lift_to_drag)),
+        ("Drag", number(drag.total, "N")),
+        (
+            "  induced, profile, body, trim",
+            _several(
+                "N", drag.induced, drag.profile, drag.body, drag.trim_induced + drag.trim_profile
+            ),
+        ),
+        ("Electric power", number(cruise.electric_power_w, "W")),
+    )
+    yield "Cruise at", number(cruise.speed_m_s, "m/s")
+    for label, value in rows:
+        yield f"  {label}", _trusted(value, cruise.trust)
+
+
+def _several(unit: str, *values: float) -> str:
+    """Show values side by side, all with the decimals of the largest."""
+    finite = [abs(value) for value in values if math.isfinite(value)]
+    places = min(decimals(max(finite)), 3) if finite else 0
+    return f"{', '.join(number(value, places=places) for value in values)} {unit}"

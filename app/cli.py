@@ -297,14 +297,14 @@ def _solve(arguments: argparse.Namespace) -> int:
     scenario = _scenario(arguments.file)
     _pin_loaded()
     results = _answer(scenario, arguments.file)
+    oddities = tuple(one.sentence for one in scenario.oddities())
     if arguments.json:
         from app.answer_json import answer_json
 
-        print(answer_json(results, version=version()))
+        print(answer_json(results, version=version(), oddities=oddities))
     else:
         from app.answer_text import answer_text
 
-        oddities = tuple(one.sentence for one in scenario.oddities())
         width = min(max(shutil.get_terminal_size((92, 24)).columns, 60), 100)
         print(answer_text(results, oddities=oddities, width=width))
     return FAILS if any(margin.verdict == "fail" for margin in results.margins) else DONE

@@ -189,6 +189,21 @@ class Scenario(param.Parameterized):
             self._setting = False
         self.revision += 1
 
+    def copy(self) -> Scenario:
+        """Make another scenario, equal in everything; nothing watches it."""
+        other = Scenario(
+            name=self.name,
+            author=self.author,
+            note=self.note,
+            sections=dict(self.sections),
+            folder=self.folder,
+        )
+        other.source_text = self.source_text
+        for group, cls in GROUPS.items():
+            values = {name: getattr(getattr(self, group), name) for name in cls.__annotations__}
+            getattr(other, group).param.update(**values)
+        return other
+
     def section_names(self) -> tuple[str, ...]:
         """Sections that have tables, in the order of the file."""
         return tuple(self.sections)

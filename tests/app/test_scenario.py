@@ -235,6 +235,16 @@ def test_a_parameter_set_by_itself_counts_as_a_change():
     assert scenario.revision == start + 2
 
 
+def test_a_copy_is_equal_and_goes_its_own_way():
+    scenario = flyable()
+    scenario.name, scenario.source_text = "Original", "schema = 1"
+    copy = scenario.copy()
+    assert copy.freeze() == scenario.freeze()
+    assert (copy.name, copy.source_text) == ("Original", "schema = 1")
+    copy.set_values({"span_m": 2.0})
+    assert scenario.wing.span_m == 2.4
+
+
 def test_freezing_refuses_what_a_parameter_let_through():
     scenario = flyable()
     scenario.brief.landing_speed_m_s = 18.0
