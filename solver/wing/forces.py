@@ -11,7 +11,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from solver.wing.influence import Influence
+from solver.wing.influence import CORE_FRACTION, Influence, core_radius
 from solver.wing.planform import Lattice
 
 FloatArray = NDArray[np.float64]
@@ -79,7 +79,11 @@ def station_forces(
 
 
 def trefftz_drag(
-    lattice: Lattice, *, circulation: FloatArray, angle_of_attack: FloatArray
+    lattice: Lattice,
+    *,
+    circulation: FloatArray,
+    angle_of_attack: FloatArray,
+    core_fraction: float = CORE_FRACTION,
 ) -> FloatArray:
     """Induced drag from the flow far downstream, over dynamic pressure.
 
@@ -90,6 +94,8 @@ def trefftz_drag(
         g [m].
     angle_of_attack : ndarray, shape (...)
         Direction in which the wake trails [rad].
+    core_fraction : float
+        As for the influence of the same legs [-].
 
     Returns
     -------
@@ -105,13 +111,14 @@ def trefftz_drag(
     outer_y, outer_z = _across_stream(lattice.outer, angle_of_attack)
     point_y, point_z = _across_stream(lattice.point, angle_of_attack)
     length_y, length_z = outer_y - inner_y, outer_z - inner_z
+    core = core_radius(lattice, core_fraction)
     total = np.zeros_like(point_y[..., :, None] * point_y[..., None, :])
     # Two-dimensional vortices: -1 at the inner, +1 at the outer end, mirrored at y = 0.
     for y, z, sign in ((inner_y, inner_z, -1.0), (outer_y, outer_z, 1.0)):
         for mirror in (1.0, -1.0):
             dy = point_y[..., :, None] - mirror * y[..., None, :]
             dz = point_z[..., :, None] - z[..., None, :]
-            swirl = sign * mirror / (2.0 * np.pi * (dy**2 + dz**2))
+            swirl = sign * mirror / (2.0 * np.pi * np.sqrt((dy**2 + dz**2) ** 2 + core**4))
             velocity_y, velocity_z = -swirl * dz, swirl * dy
             total += velocity_z * length_y[..., :, None] - velocity_y * length_z[..., :, None]
     flux = np.matmul(total, circulation[..., None])[..., 0]

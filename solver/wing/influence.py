@@ -3,10 +3,10 @@
 Every station carries a horseshoe: its bound segment and two legs that trail to
 infinity along the free stream, together with the mirror image on the left half.
 
-Within one surface the quarter-chord line is straightened before its own downwash
-is taken: on a swept line straight horseshoes with control points on the line do
-not converge as they shrink. What sweep changes is added from
-:mod:`solver.wing.sweep`. Between surfaces the true positions hold.
+Within one surface the quarter-chord line is straightened, by sliding it along the
+stream, before its own downwash is taken: on a swept line straight horseshoes with
+control points on the line do not converge as they shrink. What sweep changes is
+added from :mod:`solver.wing.sweep`. Between surfaces the true positions hold.
 """
 
 from __future__ import annotations
@@ -130,8 +130,9 @@ def influence(
     upwash = upwash + sweep_upwash(lattice)
 
     segment = lattice.segment
-    lx, ly, lz = (segment[..., k][..., None] for k in range(3))
-    lx = lx * (lattice.surface[:, None] != lattice.surface[None, :])
+    lx, ly, lz = _straightened(
+        segment[..., 0, None], segment[..., 1, None], segment[..., 2, None], lattice, stream
+    )
     lift_share = normal[..., 2]
     return Influence(
         wake_angle=angle,
@@ -147,15 +148,27 @@ def _mirrored_velocity(
     lattice: Lattice, stream: FloatArray, core_fraction: float
 ) -> tuple[FloatArray, FloatArray, FloatArray]:
     """Velocity at each control point from each horseshoe and its mirror image."""
-    core = _core_radius(lattice, core_fraction)
+    core = core_radius(lattice, core_fraction)
     right = _horseshoes(lattice, lattice.point, stream, core, own=True)
     mirrored = lattice.point * np.array([1.0, -1.0, 1.0])
     left = _horseshoes(lattice, mirrored, stream, core, own=False)
     return right[0] + left[0], right[1] - left[1], right[2] + left[2]
 
 
-def _core_radius(lattice: Lattice, core_fraction: float) -> FloatArray:
-    """Core radius of each station's legs at each point, zero on the own surface."""
+def core_radius(lattice: Lattice, core_fraction: float) -> FloatArray:
+    """Core radius of each station's legs at each control point.
+
+    Parameters
+    ----------
+    lattice : Lattice
+    core_fraction : float
+        Over the widest spacing of the legs of the surface that sheds them [-].
+
+    Returns
+    -------
+    ndarray, shape (..., n, n)
+        Row, the station acted upon; zero within one surface [m].
+    """
     other = lattice.surface[:, None] != lattice.surface[None, :]
     widest = np.zeros(lattice.width.shape)
     for index in np.unique(lattice.surface):
@@ -168,8 +181,8 @@ def _horseshoes(
     lattice: Lattice, point: FloatArray, stream: FloatArray, core: FloatArray, *, own: bool
 ) -> tuple[FloatArray, FloatArray, FloatArray]:
     """Components of the velocity at `point` from the right half's horseshoes."""
-    a = _displacement(point, lattice.inner, lattice)
-    b = _displacement(point, lattice.outer, lattice)
+    a = _displacement(point, lattice.inner, lattice, stream)
+    b = _displacement(point, lattice.outer, lattice, stream)
     length_a = np.sqrt(a[0] ** 2 + a[1] ** 2 + a[2] ** 2)
     length_b = np.sqrt(b[0] ** 2 + b[1] ** 2 + b[2] ** 2)
     leg_a = _leg(a, length_a, stream, core)
@@ -193,12 +206,21 @@ def _horseshoes(
 
 
 def _displacement(
-    point: FloatArray, end: FloatArray, lattice: Lattice
+    point: FloatArray, end: FloatArray, lattice: Lattice, stream: FloatArray
 ) -> tuple[FloatArray, FloatArray, FloatArray]:
     """Vector from segment ends to points, each surface's own line straightened."""
-    other = lattice.surface[:, None] != lattice.surface[None, :]
     dx, dy, dz = (point[..., :, None, k] - end[..., None, :, k] for k in range(3))
-    return dx * other, dy, dz
+    return _straightened(dx, dy, dz, lattice, stream)
+
+
+def _straightened(
+    dx: FloatArray, dy: FloatArray, dz: FloatArray, lattice: Lattice, stream: FloatArray
+) -> tuple[FloatArray, FloatArray, FloatArray]:
+    """Take off the part along the stream where both stations share a surface."""
+    own = lattice.surface[:, None] == lattice.surface[None, :]
+    ux, uz = stream[..., 0][..., None, None], stream[..., 2][..., None, None]
+    along = (dx * ux + dz * uz) * own
+    return dx - along * ux, dy, dz - along * uz
 
 
 def _leg(
