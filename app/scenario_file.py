@@ -172,6 +172,8 @@ def _parse(text: str, file: str) -> dict[str, Any]:
         if where == "end of document":
             where = f"line {text.count(chr(10)) + 1}, the end"
         place = f" in {where}" if where else ""
+        if twice := re.fullmatch(r"Cannot declare \((.*?),?\) twice", what):
+            what = f"[{twice[1].replace(chr(39), '').replace(', ', '.')}] stands twice"
         raise ScenarioError(
             file, "", f"is not TOML{place}: {what[:1].lower()}{what[1:]}"
         ) from error
