@@ -10,7 +10,7 @@ from __future__ import annotations
 import numpy as np
 from numpy.typing import NDArray
 
-from solver.section.sweeps import KNEE_SHARE, first_attached_peak
+from solver.section.sweeps import first_attached_peak
 
 FloatArray = NDArray[np.float64]
 
@@ -88,33 +88,3 @@ def _ramp(angle: FloatArray, lift: FloatArray, zero: float, knee: float) -> Floa
     start = min(end, knee - SHORTEST_RAMP)
     place = np.clip((angle - start) / (knee - start), 0.0, 1.0)
     return np.asarray(place * place * (3.0 - 2.0 * place))
-
-
-def knee_of(
-    angle: FloatArray, lift: FloatArray, *, largest: float, zero_lift_angle: float, peak: float
-) -> float:
-    """Angle at which a curve first reaches 98 % of its largest lift.
-
-    Parameters
-    ----------
-    angle, lift : ndarray, shape (na,)
-        [rad], [-]
-    largest : float
-        [-]
-    zero_lift_angle, peak : float
-        Between which the knee lies [rad].
-
-    Returns
-    -------
-    float
-        [rad]
-    """
-    level = KNEE_SHARE * largest
-    reached = np.flatnonzero((angle > zero_lift_angle) & (angle <= peak) & (lift >= level))
-    if not reached.size or reached[0] == 0:
-        return peak
-    i = int(reached[0])
-    if lift[i - 1] >= level:
-        return float(angle[i])
-    share = (level - lift[i - 1]) / (lift[i] - lift[i - 1])
-    return float(angle[i - 1] + share * (angle[i] - angle[i - 1]))

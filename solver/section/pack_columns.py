@@ -9,7 +9,7 @@ from types import MappingProxyType
 import numpy as np
 from numpy.typing import NDArray
 
-from solver.section.bands import LARGEST_SHARE, knee_of, negative_knee, shift_weight
+from solver.section.bands import LARGEST_SHARE, negative_knee, shift_weight
 from solver.section.hermite import node_slopes, over_reynolds, resample
 from solver.section.polar import Polar
 from solver.section.stalled_flow import Quantity, beyond
@@ -249,17 +249,14 @@ def _lift_bands(
     limits = np.empty((column.size, SIGNS.size, 3))
     shifts = [_shift(polar, grid, table[j], j) for j in range(polar.reynolds.size)]
     for k, j in enumerate(column):
-        top, peak = float(polar.largest_lift[j]), float(polar.peak_angle[j])
+        top = float(polar.largest_lift[j])
         half_width = float(polar.largest_lift_uncertainty[j]) * widening[k]
         for b, sign in enumerate(SIGNS):
             change = max(sign * half_width - debit, -LARGEST_SHARE * top)
-            curve = table[j] + change * shifts[j]
-            lift[k, :, b] = curve
-            knee = float(polar.knee_angle[j])
-            if change != 0.0:
-                zero = float(polar.zero_lift_angle[j])
-                knee = knee_of(grid, curve, largest=top + change, zero_lift_angle=zero, peak=peak)
-            limits[k, b] = top + change, knee, peak
+            lift[k, :, b] = table[j] + change * shifts[j]
+            # The weight is 1 at the knee, which therefore stays where it is: 2 % of
+            # the change is less than the scatter of a reading.
+            limits[k, b] = top + change, polar.knee_angle[j], polar.peak_angle[j]
     return lift, limits
 
 

@@ -15,7 +15,11 @@ import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from solver.errors import InputError
-from solver.section.sweeps import LiftLimit, first_attached_peak
+from solver.section.confidence import drag_half_width, largest_lift_half_width, lift_jumps
+from solver.section.lift_limits import limit_arrays, past_stall, zero_lift
+from solver.section.run_columns import LiftColumn, drag_columns, lift_columns
+from solver.section.sweeps import Sweep, first_attached_peak
+from solver.section.thin_airfoil import ThinAirfoil
 
 FloatArray = NDArray[np.float64]
 BoolArray = NDArray[np.bool_]
@@ -147,53 +151,6 @@ class Polar:
         return content.hexdigest()
 
 
-def zero_lift(angle: FloatArray, lift: FloatArray, *, peak_angle: float) -> float:
-    """Angle of the last crossing of zero lift below the peak.
-
-    Parameters
-    ----------
-    angle, lift : ndarray, shape (n,)
-        [rad], [-]
-    peak_angle : float
-        [rad]
-
-    Returns
-    -------
-    float
-        [rad]; carried on along the first chord where the table starts above zero.
-    """
-    crossings = np.flatnonzero((lift[:-1] <= 0.0) & (lift[1:] > 0.0) & (angle[:-1] < peak_angle))
-    i = int(crossings[-1]) if crossings.size else 0
-    chord = (lift[i + 1] - lift[i]) / (angle[i + 1] - angle[i])
-    if not crossings.size and not chord > 0.0:
-        return float(angle[0])
-    return float(angle[i] - lift[i] / chord)
-
-
-def past_stall(angle: FloatArray, lift: FloatArray, limit: LiftLimit) -> BoolArray:
-    """Mark the angles past the peak or plateau, on both sides.
-
-    Parameters
-    ----------
-    angle, lift : ndarray, shape (n,)
-        [rad], [-]
-    limit : LiftLimit
-        Of the positive side.
-
-    Returns
-    -------
-    ndarray of bool, shape (n,)
-    """
-    end = max(limit.peak_angle, limit.plateau[1]) if limit.plateau else limit.peak_angle
-    marked = np.asarray(angle > end)
-    if np.min(lift) < 0.0:
-        below = first_attached_peak(-angle[::-1], -lift[::-1])
-        if below.bracketed:
-            floor = max(below.peak_angle, below.plateau[1] if below.plateau else -np.inf)
-            marked |= angle < -floor
-    return marked
-
-
 def polar_from_columns(
     name: str,
     *,
@@ -278,32 +235,6 @@ def polar_from_columns(
     )
 
 
-def limit_arrays(limits: Sequence[LiftLimit]) -> dict[str, Any]:
-    """Fields of a :class:`Polar` that its lift limits fill.
-
-    Parameters
-    ----------
-    limits : sequence of LiftLimit
-        One for each Reynolds number.
-
-    Returns
-    -------
-    dict of str to ndarray, shape (nr,)
-    """
-    plateaus = [limit.plateau or (np.nan, np.nan) for limit in limits]
-    return {
-        "largest_lift": np.array([limit.largest_lift for limit in limits]),
-        "peak_angle": np.array([limit.peak_angle for limit in limits]),
-        "knee_angle": np.array([limit.knee_angle for limit in limits]),
-        "plateau_from": np.array([start for start, _ in plateaus]),
-        "plateau_to": np.array([end for _, end in plateaus]),
-        "bracketed": np.array([limit.bracketed for limit in limits]),
-        "later_rise": np.array(
-            [np.nan if limit.later_rise is None else limit.later_rise for limit in limits]
-        ),
-    }
-
-
 def polar_from_functions(
     name: str,
     *,
@@ -355,3 +286,92 @@ def polar_from_functions(
         largest_lift_uncertainty=0.0,
         drag_uncertainty=0.0,
     )
+
+
+def polar_from_sweeps(
+    name: str,
+    lift_sweeps: Sequence[Sweep],
+    drag_sweeps: Sequence[Sweep],
+    *,
+    thin: ThinAirfoil | None = None,
+    source: str = "wind-tunnel tables",
+) -> Polar:
+    """Make a polar of wind-tunnel runs.
+
+    Parameters
+    ----------
+    name : str
+        Of the section.
+    lift_sweeps : sequence of Sweep
+        Lift runs, rising and falling; a run may carry moment and drag as well.
+    drag_sweeps : sequence of Sweep
+        Drag runs, at these or other Reynolds numbers; may be empty if lift runs
+        carry drag.
+    thin : ThinAirfoil, optional
+        Fills the moment where none was measured.
+    source : str
+        Where the numbers come from.
+
+    Returns
+    -------
+    Polar
+        One column for each Reynolds number at which lift or drag was measured.
+
+    Raises
+    ------
+    InputError
+        If no run has lift or none has drag, or moment is missing and `thin` too.
+
+    Notes
+    -----
+    Rules, each in the module that applies it: repeats within 3 % in Reynolds number
+    are merged (:mod:`solver.section.run_curve`); lift is smoothed within its
+    published scatter, its peak kept; falling sweeps say how the section recovers
+    and take no part in the curve; drag is carried over at equal lift while lift
+    rises (:mod:`solver.section.drag_runs`) and beyond its run as a stalled plate's
+    (:mod:`solver.section.stalled_flow`); at a Reynolds number where only drag was
+    measured, lift is interpolated between the neighbouring lift runs. Half-widths
+    are those of :mod:`solver.section.confidence`.
+    """
+    runs_of_drag = [*drag_sweeps, *(run for run in lift_sweeps if run.drag is not None)]
+    runs_of_drag = [run for run in runs_of_drag if run.rising and run.drag is not None]
+    runs_of_lift = list(lift_sweeps) or runs_of_drag
+    if not runs_of_lift:
+        raise InputError("lift_sweeps", lift_sweeps, "one run or more")
+    if not runs_of_drag:
+        raise InputError("drag_sweeps", drag_sweeps, "one rising run with drag or more")
+    grid, columns = lift_columns(runs_of_lift, runs_of_drag, thin=thin)
+    drag, drag_measured = drag_columns(grid, columns, runs_of_drag)
+    re = np.array([column.reynolds for column in columns])
+    arrays = limit_arrays([column.limit for column in columns])
+    half_width = largest_lift_half_width(re)
+    return Polar(
+        name=name,
+        source=source,
+        angle=grid,
+        reynolds=re,
+        lift=_table(columns, "lift"),
+        drag=drag,
+        moment=_table(columns, "moment"),
+        origin_lift=_codes(_table(columns, "lift_measured")),
+        origin_drag=_codes(drag_measured),
+        origin_moment=_codes(_table(columns, "moment_measured")),
+        valid=_table(columns, "covered"),
+        beyond_stall=_table(columns, "beyond_stall"),
+        **arrays,
+        largest_lift_uncertainty=half_width,
+        drag_uncertainty=drag_half_width(re),
+        unknown=lift_jumps(re, arrays["largest_lift"]),
+        recovery=np.array([column.recovery for column in columns]),
+        recovery_lift=np.array([column.recovery_lift for column in columns]),
+        estimated=False,
+        zero_lift_angle=np.array([column.zero_lift_angle for column in columns]),
+    )
+
+
+def _table(columns: Sequence[LiftColumn], name: str) -> NDArray[Any]:
+    return np.column_stack([getattr(column, name) for column in columns])
+
+
+def _codes(measured: BoolArray) -> OriginArray:
+    return np.where(measured, CellOrigin.MEASURED, CellOrigin.FILLED).astype(np.uint8)

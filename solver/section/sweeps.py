@@ -26,8 +26,9 @@ than their scatter when they differ by more than twice this."""
 KNEE_SHARE = 0.98
 """Share of the largest lift at which the knee of the lift curve is placed [-]."""
 
-PLATEAU_LENGTH = np.radians(3.0)
-"""Shortest stretch without a rise beyond scatter that is called a plateau [rad]."""
+PLATEAU_LENGTH = np.radians(2.5)
+"""Shortest stretch without a change beyond scatter that is called a plateau [rad]; our
+choice: readings stand up to 1.5 degrees apart, so that three of them fit in."""
 
 SAME_REYNOLDS = 0.03
 """Runs whose Reynolds numbers differ by less than this share are repeats [-]."""
@@ -114,7 +115,7 @@ class LiftLimit:
     knee_angle : float
         Where lift first reaches 98 % of the largest [rad].
     plateau : (float, float) or None
-        From where to where lift stays within 2 % of the largest, if that is 3
+        From where to where lift stays within 2 % of the largest, if that is 2.5
         degrees or more [rad].
     bracketed : bool
         A fall of more than the scatter was measured beyond it. False: the run ends
@@ -136,7 +137,7 @@ def first_attached_peak(
 ) -> LiftLimit:
     """Find the first peak that a fall of more than the scatter follows.
 
-    A stretch of three degrees or more along which lift stays within the scatter
+    A stretch of 2.5 degrees or more along which lift stays within the scatter
     ends the attached part as well: what rises again after it is reported, not used.
 
     Parameters
