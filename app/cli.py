@@ -96,7 +96,7 @@ def pin_threads() -> None:
 
 
 def _pin_loaded() -> None:
-    from threadpoolctl import threadpool_limits
+    from threadpoolctl import threadpool_limits  # type: ignore[import-untyped]
 
     threadpool_limits(limits=1, user_api="blas")
 

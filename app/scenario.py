@@ -115,7 +115,8 @@ class Scenario(param.Parameterized):
     revision: int = _typed(param.Integer(default=0, doc="Rises by one after every change."))
 
     def __init__(self, **values: object) -> None:
-        super().__init__(**{name: cls() for name, cls in GROUPS.items()}, **values)
+        groups = {name: cls() for name, cls in GROUPS.items()}
+        super().__init__(**groups, **values)  # type: ignore[no-untyped-call]
         self.source_text = ""
         """The file it was read from, word for word, so that its comments survive saving."""
         self._setting = False

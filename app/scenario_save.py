@@ -123,7 +123,8 @@ def _plain(value: float | str) -> float | int | str:
 def _item(value: Any) -> Item:  # noqa: ANN401 - whatever TOML can hold
     if isinstance(value, str) and "\n" in value and not value.startswith("\n"):
         return tomlkit.string(value, multiline=True)
-    return tomlkit.item(value)
+    item: Item = tomlkit.item(value)
+    return item
 
 
 def _merged(text: str, content: Mapping[str, Any]) -> str:
