@@ -1,0 +1,90 @@
+"""The page's own parts: margins, tabs, inputs, words and choices.
+
+Each is a small piece of plain JavaScript in ``app/static`` that builds its
+elements itself and sets text only as text. State goes out as one parameter,
+what the user does comes back as a message; every message is answered, so that
+the browser never has more than one in flight.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Mapping
+from typing import Any, ClassVar
+
+import panel as pn
+import param
+from panel.custom import JSComponent
+
+from app.figures.look import static_text
+
+Message = Mapping[str, Any]
+
+
+def _script(name: str) -> str:
+    return static_text("dom.js") + static_text(name)
+
+
+class Part(JSComponent):
+    """What all parts share: the look, and messages that are always answered."""
+
+    _stylesheets: ClassVar[list[str]] = [static_text("page.css")]
+
+    def __init__(
+        self, on_message: Callable[[Message], None] | None = None, **params: object
+    ) -> None:
+        self._on_message = on_message
+        super().__init__(**params)  # type: ignore[no-untyped-call]
+
+    def _handle_msg(self, message: Message) -> None:
+        # One message to the browser for all that changes, and the answer with it.
+        with pn.io.hold():
+            try:
+                if self._on_message is not None:
+                    self._on_message(message)
+            finally:
+                self._send_msg({"done": message.get("seq")})
+
+
+class Strip(Part):
+    """Name, margins and the reason."""
+
+    data = param.Dict(default={})
+    _esm = _script("strip.js")
+
+
+class Tabs(Part):
+    """The sheets as tabs, and the station."""
+
+    names = param.List(default=[], item_type=str)
+    active = param.String(default="")
+    station = param.Dict(default={"share": 0.5, "text": ""})
+    _esm = _script("tabs.js")
+
+
+class FieldColumn(Part):
+    """The inputs: groups of fields with their state."""
+
+    groups = param.List(default=[])
+    state = param.Dict(default={"values": {}, "refusals": {}})
+    _esm = _script("fields.js")
+
+
+class Words(Part):
+    """Sentences, facts and tables."""
+
+    blocks = param.List(default=[])
+    _esm = _script("words.js")
+
+
+class Choice(Part):
+    """One choice out of a few."""
+
+    data = param.Dict(default={"label": "", "options": [], "chosen": ""})
+    _esm = _script("choice.js")
+
+
+class Footer(Part):
+    """The cautions, always in view."""
+
+    sentences = param.List(default=[], item_type=str)
+    _esm = static_text("dom.js") + static_text("footer.js")

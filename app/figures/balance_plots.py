@@ -1,0 +1,205 @@
+"""Longitudinal balance: where the points lie, and the elevator that trim asks for."""
+
+from __future__ import annotations
+
+import numpy as np
+from bokeh.models import ColumnDataSource
+
+from app.analysis.results import BalanceResult, Results
+from app.figures import look, words
+from app.figures.plot import Labels, Plot, TrustLine, add_reading, fit, new_figure
+
+
+class ChordRuler(Plot):
+    """The mean aerodynamic chord as a ruler, with the points on it."""
+
+    def __init__(self) -> None:
+        self.model = plot = new_figure(
+            "chord_ruler",
+            "Points on the mean aerodynamic chord",
+            x_label="behind its leading edge [% of it]",
+            y_label="",
+            x_range=(-5.0, 105.0),
+            y_range=(-1.6, 2.6),
+        )
+        plot.yaxis.visible = False
+        plot.ygrid.visible = False
+        plot.min_border_left = 20
+        grey, today, limit = (look.colour(name) for name in ("outline", "today", "limit"))
+        plot.segment([0.0], [0.0], [100.0], [0.0], line_color=grey, line_width=6, line_alpha=0.45)
+        self.bar = ColumnDataSource({"left": [], "right": [], "colour": []})
+        plot.segment("left", 0.0, "right", 0.0, source=self.bar, line_color="colour", line_width=6)
+        self.needed = ColumnDataSource({"x": []})
+        plot.scatter(
+            "x",
+            0.0,
+            source=self.needed,
+            marker="dash",
+            angle=np.pi / 2,
+            size=26,
+            line_color=limit,
+            line_width=2,
+        )
+        columns = ("x", "marker", "fill", "line")
+        self.points = ColumnDataSource({name: [] for name in columns})
+        plot.scatter(
+            "x",
+            0.0,
+            source=self.points,
+            marker="marker",
+            size=13,
+            fill_color="fill",
+            line_color="line",
+            line_width=2,
+        )
+        self.above = Labels(plot, align="center", baseline="bottom")
+        self.today = today
+
+    def update(self, results: Results) -> None:
+        """Feed the figure."""
+        balance = results.balance
+        today, limit = look.colour("today"), look.colour("limit")
+        marks = [
+            (balance.forward_balance_percent, "circle", None, today, "forward", 1.55),
+            (balance.balance_percent, "circle", today, today, "balance point", 0.85),
+            (balance.neutral_point_percent, "triangle", limit, limit, "neutral point", 0.5),
+        ]
+        marks = [mark for mark in marks if np.isfinite(mark[0])]
+        fit(self.x_range, [mark[0] for mark in marks], include=(-5.0, 105.0))
+        self.points.data = {
+            "x": [mark[0] for mark in marks],
+            "marker": [mark[1] for mark in marks],
+            "fill": [mark[2] for mark in marks],
+            "line": [mark[3] for mark in marks],
+        }
+        self._feed_margin(results, balance)
+        labels = [
+            (x, y, f"{text} {words.number(x, '%')}", line) for x, _, _, line, text, y in marks
+        ]
+        if np.isfinite(balance.static_margin_percent):
+            middle = 0.5 * (balance.balance_percent + balance.neutral_point_percent)
+            said = f"static margin {words.number(balance.static_margin_percent, '%')}"
+            labels.append((middle, -1.15, said, look.colour("outline")))
+        self.above.feed(labels)
+
+    def _feed_margin(self, results: Results, balance: BalanceResult) -> None:
+        first, last = balance.balance_percent, balance.neutral_point_percent
+        if not np.isfinite([first, last]).all():
+            self.bar.data = {"left": [], "right": [], "colour": []}
+            self.needed.data = {"x": []}
+            return
+        stable = last >= first
+        shade = look.colour("body" if stable else "limit")
+        self.bar.data = {"left": [first], "right": [last], "colour": [shade]}
+        least = next((m.limit for m in results.margins if m.key == "static_margin"), np.nan)
+        self.needed.data = {"x": [last - least] if np.isfinite(least) else []}
+
+
+class ElevatorOverSpeed(Plot):
+    """Elevator for trim over speed, at both balance points, between its stops."""
+
+    def __init__(self) -> None:
+        self.model = plot = new_figure(
+            "elevator",
+            "Elevator for level flight over speed",
+            x_label="true airspeed [m/s]",
+            y_label="elevator, down [deg]",
+            x_range=(8.0, 25.0),
+            y_range=(-25.0, 25.0),
+        )
+        limit, today = look.colour("limit"), look.colour("today")
+        self.stops = ColumnDataSource({"inner": [], "outer": []})
+        plot.hstrip(
+            "inner",
+            "outer",
+            source=self.stops,
+            fill_color=None,
+            line_color=None,
+            hatch_pattern="right_diagonal_line",
+            hatch_color=limit,
+            hatch_alpha=0.55,
+            hatch_scale=7,
+            hatch_weight=1,
+        )
+        plot.hspan("inner", source=self.stops, line_color=limit, line_width=look.THICK)
+        plot.hspan(y=[0.0], line_color=look.colour("outline"), line_width=0.75)
+        self.speeds = ColumnDataSource({"x": [], "colour": []})
+        plot.vspan("x", source=self.speeds, line_color="colour", line_width=look.THIN)
+        self.nominal = TrustLine(plot, colour=today, width=2.5)
+        self.forward = TrustLine(plot, colour=look.colour("trim"), width=2.5)
+        self.labels = Labels(plot)
+        self.tops = Labels(plot, baseline="top")
+        add_reading(
+            plot,
+            [*self.nominal.renderers, *self.forward.renderers],
+            [("speed", "@x{0.0} m/s"), ("elevator", "$y{0.0} deg")],
+        )
+
+    def update(self, results: Results) -> None:
+        """Feed the figure."""
+        balance = results.balance
+        travel = balance.elevator_travel_deg
+        speed = np.asarray(balance.speed_m_s)
+        fit(self.x_range, speed)
+        reach = 1.25 * travel
+        fit(self.y_range, [-reach, reach])
+        far = 10.0 * travel
+        self.stops.data = {"inner": [travel, -travel], "outer": [far, -far]}
+        self.nominal.feed(speed, balance.elevator_nominal_deg, balance.trust)
+        self.forward.feed(speed, balance.elevator_forward_deg, balance.trust)
+        self._feed_labels(results)
+
+    def _feed_labels(self, results: Results) -> None:
+        balance = results.balance
+        speed = np.asarray(balance.speed_m_s)
+        height = self.height
+        rows = []
+        for values, text, colour, offset in (
+            (balance.elevator_nominal_deg, "balance point", "today", 0.09),
+            (balance.elevator_forward_deg, "forward balance point", "trim", -0.09),
+        ):
+            found = np.isfinite(values)
+            if found.any():
+                at = float(speed[0]) + 0.45 * float(speed[-1] - speed[0])
+                place = float(np.interp(at, speed[found], np.asarray(values)[found]))
+                rows.append((at, place + offset * height, text, look.colour(colour)))
+        left = self.left
+        across = self.width
+        for sign in (1.0, -1.0):
+            edge = sign * balance.elevator_travel_deg
+            rows.append(
+                (
+                    left + 0.02 * across,
+                    edge - sign * 0.05 * height,
+                    f"stop, {words.number(edge, 'deg')}",
+                    look.colour("limit"),
+                )
+            )
+        self.labels.feed(rows)
+        mark_speeds(self.speeds, self.tops, results, top=0.94 * balance.elevator_travel_deg)
+
+
+def mark_speeds(source: ColumnDataSource, labels: Labels, results: Results, *, top: float) -> None:
+    """Mark today's landing and cruise speed.
+
+    Parameters
+    ----------
+    source : ColumnDataSource
+        With columns x and colour.
+    labels : Labels
+        Written at the top.
+    results : Results
+        Whose inputs name the two speeds.
+    top : float
+        Where the words begin, in the unit of the vertical axis.
+    """
+    rows = []
+    for name, text, shade in (
+        ("landing_speed_m_s", "landing", "today"),
+        ("cruise_speed_m_s", "cruise", "cruise"),
+    ):
+        value = results.inputs.get(name)
+        if isinstance(value, (int, float)):
+            rows.append((float(value), f" {text}", look.colour(shade)))
+    source.data = {"x": [row[0] for row in rows], "colour": [row[2] for row in rows]}
+    labels.feed([(x, top, text, shade) for x, text, shade in rows])
