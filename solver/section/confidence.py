@@ -20,6 +20,10 @@ DRAG_SCATTER = (
 )
 """Reynolds number and mean difference in drag between two tunnels, a share of drag."""
 
+DRAG_READING_SCATTER = ((60e3, 0.14), (100e3, 0.073), (200e3, 0.049), (300e3, 0.049))
+"""Reynolds number and standard deviation of drag over the span of one run, a share of
+drag: median of 247 to 327 points at each, derived from SoarTech's tables."""
+
 LIFT_SCATTER = ((100e3, 0.07), (300e3, 0.05))
 """Reynolds number and half-width for largest lift [-]."""
 
@@ -53,6 +57,22 @@ def drag_half_width(reynolds: ArrayLike) -> FloatArray:
        SoarTech, 1995-1998. The differences were derived from the tables of both.
     """
     return _over_log(reynolds, DRAG_SCATTER)
+
+
+def drag_reading_scatter(reynolds: ArrayLike) -> FloatArray:
+    """How far one drag reading scatters, as a share of drag.
+
+    Parameters
+    ----------
+    reynolds : array_like
+        [-], > 0
+
+    Returns
+    -------
+    ndarray
+        See :data:`DRAG_READING_SCATTER`; ends held [-].
+    """
+    return _over_log(reynolds, DRAG_READING_SCATTER)
 
 
 def largest_lift_half_width(reynolds: ArrayLike) -> FloatArray:

@@ -6,8 +6,8 @@ from collections.abc import Sequence
 
 import numpy as np
 from numpy.typing import NDArray
-from scipy.interpolate import PchipInterpolator
 
+from solver.section.hermite import monotone_curve
 from solver.section.stalled_flow import beyond
 from solver.section.sweeps import SAME_REYNOLDS, Sweep
 
@@ -72,7 +72,7 @@ def _one_run(
 ) -> tuple[FloatArray, BoolArray]:
     at = grid - _shift(grid, lift, largest, peak, run)
     drag = np.asarray(run.drag)
-    curve = PchipInterpolator(run.angle, drag)
+    curve = monotone_curve(run.angle, drag)
     low, high = float(run.angle[0]), float(run.angle[-1])
     inside = (at >= low) & (at <= high)
     found = np.asarray(curve(np.clip(at, low, high)))

@@ -46,8 +46,10 @@ class PackedSection:
     ------
     log_reynolds : ndarray, shape (k,)
         Its nodes.
-    values, slopes : ndarray, shape (k, na, 3 bands, 3 quantities)
-        Coefficients and their slopes over angle [-], [1/rad].
+    angle : ndarray, shape (na,)
+        The grid [rad].
+    values : ndarray, shape (k, na, 3 bands, 3 quantities)
+        Coefficients [-].
     limits : ndarray, shape (k, 3 bands, 3)
         Largest lift [-], knee angle, peak angle [rad].
     rows : mapping of str to ndarray, shape (k,)
@@ -57,8 +59,8 @@ class PackedSection:
     """
 
     log_reynolds: FloatArray
+    angle: FloatArray
     values: FloatArray
-    slopes: FloatArray
     limits: FloatArray
     rows: Mapping[str, FloatArray]
     unknown: tuple[tuple[float, float], ...]
@@ -77,10 +79,9 @@ class PackedSection:
         -------
         four ndarrays, shape (na, m, 3 bands, 3 quantities)
         """
-        value, over_re = over_reynolds(*self._held(self.values), nodes)
-        slope, cross = over_reynolds(*self._held(self.slopes), nodes)
-        swapped = [np.swapaxes(array, 0, 1) for array in (value, slope, over_re, cross)]
-        return swapped[0], swapped[1], swapped[2], swapped[3]
+        found = over_reynolds(*self._held(self.values), nodes)
+        value, over_re = (np.swapaxes(array, 0, 1) for array in found)
+        return value, node_slopes(self.angle, value), over_re, node_slopes(self.angle, over_re)
 
     def limits_at(self, nodes: FloatArray) -> tuple[FloatArray, FloatArray]:
         """Limits and their slopes over log Reynolds number.
@@ -143,8 +144,8 @@ def _nodes(polar: Polar, *, cliffs: bool) -> list[_Node]:
 
 
 def _widening(ratio: float) -> float:
-    """Doubled at half or twice the last Reynolds number, and so on; our choice."""
-    return float(1.0 + abs(np.log2(ratio)))
+    """Half as much again for each halving or doubling past the table; our choice."""
+    return float(1.0 + 0.5 * abs(np.log2(ratio)))
 
 
 def on_grid(polar: Polar, quantity: Quantity, grid: FloatArray) -> FloatArray:
@@ -223,12 +224,11 @@ def pack_section(
     drag = drag * (1.0 - share[:, None, None] * SIGNS)
     moment = np.repeat(tables["moment"][column][:, :, None], 3, axis=2)
     values = np.stack([lift, drag, moment], axis=-1)
-    slopes = np.swapaxes(node_slopes(grid, np.swapaxes(values, 0, 1)), 0, 1)
     rows = {name: row[column] for name, row in _rows(polar).items()}
     return PackedSection(
         log_reynolds=log_re,
         values=values,
-        slopes=slopes,
+        angle=grid,
         limits=limits,
         rows=MappingProxyType(rows),
         unknown=polar.unknown if hold_at_reynolds is None else (),

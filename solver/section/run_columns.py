@@ -10,10 +10,11 @@ import numpy as np
 from numpy.typing import NDArray
 
 from solver.errors import InputError
-from solver.section.confidence import lift_jumps
+from solver.section.confidence import drag_reading_scatter, lift_jumps
 from solver.section.drag_runs import drag_over_angle
+from solver.section.hermite import monotone_curve
 from solver.section.lift_limits import past_stall, zero_lift
-from solver.section.run_curve import merge_drag, merge_lift, run_curve, smooth_readings
+from solver.section.run_curve import merge_drag, merge_lift, smooth_readings
 from solver.section.stalled_flow import Quantity, beyond
 from solver.section.sweeps import (
     READING_SCATTER,
@@ -29,9 +30,21 @@ FloatArray = NDArray[np.float64]
 BoolArray = NDArray[np.bool_]
 
 GRID_STEP = np.radians(0.25)
+STALLED_SCATTER = 0.03
+"""How far a reading beyond stall is moved at most [-]: repeats of stalled readings in
+one tunnel differ by this and more; our reading of the tables."""
+
+STEEP_FALL = -0.1 / np.radians(1.0)
+"""A run that ends in a steeper fall than this [1/rad], or that ends while lift still
+rises, is ended level, so that nothing is promised beyond its last reading."""
+
 OWN_COLUMN = 0.1
 """A drag run further than this in log Reynolds number from every lift run has a column
 of its own [-]."""
+
+DRAG_STIFFNESS = 0.2
+"""As :data:`solver.section.run_curve.STIFFNESS`, for the logarithm of drag, whose bucket
+has sharper corners than a lift curve [deg^4]."""
 
 MOMENT_SCATTER = 0.01
 """How far a moment reading is moved at most [-]: that of E387 model E at 100,000
@@ -125,11 +138,17 @@ def _column(
     run = _peak_on_grid(run)
     limit = first_attached_peak(run.angle, run.lift)
     peak = int(np.searchsorted(run.angle, limit.peak_angle))
+    stalled = run.angle > max(limit.peak_angle, limit.plateau[1] if limit.plateau else -np.inf)
     fitted = smooth_readings(
-        run.angle, run.lift, scatter=READING_SCATTER, pinned=(peak,), ceiling=limit.largest_lift
+        run.angle,
+        run.lift,
+        scatter=np.where(stalled, STALLED_SCATTER, READING_SCATTER),
+        pinned=(peak,),
+        ceiling=limit.largest_lift,
     )
-    open_end = not limit.bracketed and peak == run.angle.size - 1
-    lift, covered = _laid_down(grid, "lift", run.angle, fitted, level_end=open_end)
+    last = (fitted[-1] - fitted[-2]) / (run.angle[-1] - run.angle[-2])
+    level = last < STEEP_FALL or (not limit.bracketed and peak == run.angle.size - 1)
+    lift, covered = _laid_down(grid, "lift", run.angle, fitted, level_end=level)
     zero = zero_lift(grid, lift, peak_angle=limit.peak_angle)
     loop = hysteresis(run, merge_lift(list(falling)), limit=limit) if falling else None
     moment, moment_measured = _moment(grid, run, covered, limit, thin)
@@ -170,7 +189,7 @@ def _laid_down(
     level_end: bool = False,
 ) -> tuple[FloatArray, BoolArray]:
     """Curve through readings on the grid, extended as a stalled plate."""
-    curve = run_curve(angle, values, level_end=level_end)
+    curve = monotone_curve(angle, values, level_end=level_end)
     slope = curve.derivative()
     result = np.asarray(curve(np.clip(grid, angle[0], angle[-1])))
     below, above = grid < angle[0], grid > angle[-1]
@@ -271,7 +290,7 @@ def drag_columns(
     measured : ndarray of bool, shape (n, k)
     """
     groups = group_repeats([run.reynolds for run in runs])
-    merged = [merge_drag([runs[i] for i in group]) for group in groups]
+    merged = [_smooth_drag(merge_drag([runs[i] for i in group])) for group in groups]
     found = [
         drag_over_angle(
             grid,
@@ -284,3 +303,12 @@ def drag_columns(
         for column in columns
     ]
     return np.column_stack([drag for drag, _ in found]), np.column_stack([m for _, m in found])
+
+
+def _smooth_drag(run: Sweep) -> Sweep:
+    """Smooth the logarithm of drag within the spanwise scatter of one run."""
+    scatter = float(drag_reading_scatter(run.reynolds))
+    smoothed = smooth_readings(
+        run.angle, np.log(np.asarray(run.drag)), scatter=scatter, stiffness=DRAG_STIFFNESS
+    )
+    return replace(run, drag=np.exp(smoothed))

@@ -4,7 +4,6 @@ from __future__ import annotations
 
 import numpy as np
 from numpy.typing import NDArray
-from scipy.interpolate import PchipInterpolator
 from scipy.optimize import lsq_linear
 
 from solver.section.sweeps import LOOP_GAP, Sweep
@@ -27,9 +26,10 @@ def smooth_readings(
     angle: FloatArray,
     values: FloatArray,
     *,
-    scatter: float,
+    scatter: float | FloatArray,
     pinned: tuple[int, ...] = (),
     ceiling: float = np.inf,
+    stiffness: float = STIFFNESS,
 ) -> FloatArray:
     r"""Stiffest readings that stay within the scatter of those given.
 
@@ -39,12 +39,14 @@ def smooth_readings(
         Ascending [rad].
     values : ndarray, shape (n,)
         [-]
-    scatter : float
+    scatter : float or ndarray, shape (n,)
         No reading is moved further [-].
     pinned : tuple of int
         Readings that are kept as they are: peaks.
     ceiling : float
         No reading is moved above this [-]; those given above it are not raised.
+    stiffness : float
+        See :data:`STIFFNESS` [deg^4].
 
     Returns
     -------
@@ -73,9 +75,9 @@ def smooth_readings(
     rows[inner, inner] = 1.0 / (step[:-1] * mean)
     rows[inner, inner + 2] = 1.0 / (step[1:] * mean)
     rows[inner, inner + 1] = -rows[inner, inner] - rows[inner, inner + 2]
-    rows *= np.sqrt(STIFFNESS * mean)[:, None]
+    rows *= np.sqrt(stiffness * mean)[:, None]
     near = np.sqrt(span)
-    allowed = np.full(x.size, scatter)
+    allowed = np.broadcast_to(np.asarray(scatter, dtype=np.float64), x.shape).copy()
     allowed[list(pinned)] = PINNED
     upper = np.minimum(allowed, np.maximum(ceiling - values, PINNED))
     # Unknown is the move of each reading, so that the bounds are about zero.
@@ -86,35 +88,6 @@ def smooth_readings(
         method="bvls",
     )
     return np.asarray(values + found.x)
-
-
-def run_curve(
-    angle: FloatArray, values: FloatArray, *, level_end: bool = False
-) -> PchipInterpolator:
-    """Monotone cubic through readings: it neither overshoots nor rings.
-
-    Parameters
-    ----------
-    angle, values : ndarray, shape (n,)
-        [rad], [-]
-    level_end : bool
-        End with a slope of zero: for a run that ends while lift still rises, so
-        that nothing beyond its last reading is promised.
-
-    Returns
-    -------
-    scipy.interpolate.PchipInterpolator
-    """
-    curve = PchipInterpolator(angle, values)
-    if level_end:
-        chord = values[-1] - values[-2]
-        width = angle[-1] - angle[-2]
-        slope = float(curve.derivative()(angle[-2])) * width
-        # Powers of the distance from the last but one reading, highest first.
-        curve.c[:, -1] = np.array(
-            [slope - 2.0 * chord, 3.0 * chord - 2.0 * slope, slope, values[-2]]
-        ) / np.array([width**3, width**2, width, 1.0])
-    return curve
 
 
 def merge_lift(runs: list[Sweep]) -> Sweep:
