@@ -200,7 +200,7 @@ def attached_largest_lift(
 
     The radius of a bubble, :math:`r_b`, stands beside that of the nose, since at these
     Reynolds numbers the flow does not follow a sharp nose but a bubble on it: with the
-    bare radius the rule errs by 0.3 in largest lift, with the bubble by 0.06. The published
+    bare radius the rule errs by 0.23 in largest lift, with the bubble by 0.06. The published
     values of K belong to Reynolds numbers above a million; form and idea are those of [1],
     K, n and r_b are fitted.
 

@@ -230,9 +230,10 @@ def viscous_flap_factor(deflection: ArrayLike) -> FloatArray:
 
     The boundary layer thickens over the flap and, from about 15 degrees,
     separates at the hinge. The published curve was measured at Reynolds numbers
-    above a million; below 100,000 real flaps do worse still by an amount that
-    no source known to us gives, so the factor is an upper limit there. A gap at
-    the hinge costs more and is not contained.
+    above a million, so that the factor is an upper limit on small drones: on the
+    one section that we have tables for (SD7037, UIUC vol. 2) a flap at 60,000 to
+    100,000 reaches about 0.6 of its own effect at 300,000. A gap at the hinge
+    costs more and is not contained.
 
     Parameters
     ----------
