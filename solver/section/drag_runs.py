@@ -18,6 +18,10 @@ MATCHED_SHARE = 0.95
 """Drag is matched at equal lift up to this share of the lesser largest lift [-]. Nearer
 to it lift says nothing about drag: E387 goes from 0.027 to 0.053 along its plateau."""
 
+STEEPEST_END = 0.015 / np.radians(1.0)
+"""Slope of drag with which a run may be carried on beyond its ends [1/rad], a little
+more than a stalled plate's at 10 degrees: steeper ends would overshoot the plate."""
+
 LARGEST_SHIFT = np.radians(1.5)
 """Largest difference in angle at equal lift that is followed [rad]; more is another
 branch. Angles agree within 0.08 degrees in one tunnel, 0.4 degrees between models."""
@@ -72,7 +76,7 @@ def _one_run(
 ) -> tuple[FloatArray, BoolArray]:
     at = grid - _shift(grid, lift, largest, peak, run)
     drag = np.asarray(run.drag)
-    curve = monotone_curve(run.angle, drag)
+    curve = monotone_curve(run.angle, drag, steepest_ends=(STEEPEST_END, STEEPEST_END))
     low, high = float(run.angle[0]), float(run.angle[-1])
     inside = (at >= low) & (at <= high)
     found = np.asarray(curve(np.clip(at, low, high)))

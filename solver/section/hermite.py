@@ -80,7 +80,9 @@ def node_slopes(x: FloatArray, y: FloatArray) -> FloatArray:
     return np.where(rough, limited, fine)
 
 
-def monotone_curve(x: FloatArray, y: FloatArray, *, level_end: bool = False) -> CubicHermiteSpline:
+def monotone_curve(
+    x: FloatArray, y: FloatArray, *, steepest_ends: tuple[float, float] = (np.inf, np.inf)
+) -> CubicHermiteSpline:
     """Curve through a few readings that neither overshoots nor rings.
 
     Parameters
@@ -88,8 +90,8 @@ def monotone_curve(x: FloatArray, y: FloatArray, *, level_end: bool = False) -> 
     x : ndarray, shape (n,)
         Ascending.
     y : ndarray, shape (n,)
-    level_end : bool
-        End with a slope of zero.
+    steepest_ends : tuple of float
+        Largest size of the slope at the first and at the last reading.
 
     Returns
     -------
@@ -111,8 +113,8 @@ def monotone_curve(x: FloatArray, y: FloatArray, *, level_end: bool = False) -> 
     sign = np.where(left * right > 0.0, np.sign(left), 0.0)
     least = np.minimum(np.abs(left), np.abs(right))
     slope = sign * np.clip(sign * slope, 0.0, 3.0 * least)
-    if level_end:
-        slope[-1] = 0.0
+    first, last = steepest_ends
+    slope[0], slope[-1] = np.clip(slope[0], -first, first), np.clip(slope[-1], -last, last)
     return CubicHermiteSpline(x, y, slope)
 
 

@@ -330,8 +330,9 @@ def polar_from_sweeps(
     and take no part in the curve; drag is carried over at equal lift while lift
     rises (:mod:`solver.section.drag_runs`) and beyond its run as a stalled plate's
     (:mod:`solver.section.stalled_flow`); at a Reynolds number where only drag was
-    measured, lift is interpolated between the neighbouring lift runs. Half-widths
-    are those of :mod:`solver.section.confidence`.
+    measured, lift is interpolated between the neighbouring lift runs. A symmetric
+    section shows on one side what the other would. Half-widths are those of
+    :mod:`solver.section.confidence`.
     """
     runs_of_drag = [*drag_sweeps, *(run for run in lift_sweeps if run.drag is not None)]
     runs_of_drag = [run for run in runs_of_drag if run.rising and run.drag is not None]
@@ -341,7 +342,7 @@ def polar_from_sweeps(
     if not runs_of_drag:
         raise InputError("drag_sweeps", drag_sweeps, "one rising run with drag or more")
     grid, columns = lift_columns(runs_of_lift, runs_of_drag, thin=thin)
-    drag, drag_measured = drag_columns(grid, columns, runs_of_drag)
+    drag, drag_measured = drag_columns(grid, columns, runs_of_drag, thin=thin)
     re = np.array([column.reynolds for column in columns])
     arrays = limit_arrays([column.limit for column in columns])
     half_width = largest_lift_half_width(re)

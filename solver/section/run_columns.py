@@ -14,7 +14,12 @@ from solver.section.confidence import drag_reading_scatter, lift_jumps
 from solver.section.drag_runs import drag_over_angle
 from solver.section.hermite import monotone_curve
 from solver.section.lift_limits import past_stall, zero_lift
-from solver.section.run_curve import merge_drag, merge_lift, smooth_readings
+from solver.section.run_curve import (
+    merge_drag,
+    merge_lift,
+    mirrored,
+    smooth_readings,
+)
 from solver.section.stalled_flow import Quantity, beyond
 from solver.section.sweeps import (
     READING_SCATTER,
@@ -37,6 +42,9 @@ one tunnel differ by this and more; our reading of the tables."""
 STEEP_FALL = -0.1 / np.radians(1.0)
 """A run that ends in a steeper fall than this [1/rad], or that ends while lift still
 rises, is ended level, so that nothing is promised beyond its last reading."""
+
+SPARE = np.radians(2.0)
+"""Room for a mirror image about another angle than zero [rad]."""
 
 OWN_COLUMN = 0.1
 """A drag run further than this in log Reynolds number from every lift run has a column
@@ -114,6 +122,8 @@ def lift_columns(
     """
     lowest = min(float(np.min(run.angle)) for run in runs)
     highest = max(float(np.max(run.angle)) for run in runs)
+    if symmetric(thin):
+        lowest, highest = min(lowest, -highest) - SPARE, max(highest, -lowest) + SPARE
     steps = np.arange(math.floor(lowest / GRID_STEP - 1e-9), math.ceil(highest / GRID_STEP) + 1)
     grid = steps * GRID_STEP
     columns = []
@@ -123,6 +133,8 @@ def lift_columns(
         rising = [run for run in same if run.rising] or same
         falling = [run for run in same if not run.rising]
         merged = merge_lift(rising)
+        if symmetric(thin):
+            merged = mirrored(merged)
         if merged.angle.size < 3:
             raise InputError("lift_sweeps", merged.angle.size, "runs of three readings or more")
         columns.append(_column(grid, merged, falling, thin))
@@ -167,6 +179,22 @@ def _column(
     )
 
 
+def symmetric(thin: ThinAirfoil | None) -> bool:
+    """Tell a symmetric section by its thin-airfoil values, as far as an outline shows.
+
+    Parameters
+    ----------
+    thin : ThinAirfoil or None
+
+    Returns
+    -------
+    bool
+    """
+    return thin is not None and (
+        abs(thin.moment_quarter_chord) < 0.002 and abs(thin.zero_lift_angle) < np.radians(0.1)
+    )
+
+
 def _peak_on_grid(run: Sweep) -> Sweep:
     """Move the reading at the peak to the nearest angle of the grid.
 
@@ -189,7 +217,7 @@ def _laid_down(
     level_end: bool = False,
 ) -> tuple[FloatArray, BoolArray]:
     """Curve through readings on the grid, extended as a stalled plate."""
-    curve = monotone_curve(angle, values, level_end=level_end)
+    curve = monotone_curve(angle, values, steepest_ends=(np.inf, 0.0 if level_end else np.inf))
     slope = curve.derivative()
     result = np.asarray(curve(np.clip(grid, angle[0], angle[-1])))
     below, above = grid < angle[0], grid > angle[-1]
@@ -215,7 +243,8 @@ def _moment(
     if thin is None:
         raise InputError("thin", None, "given where no moment was measured")
     # Attached flow keeps the moment of thin-airfoil theory at every angle.
-    attached = np.array([run.angle[0], limit.knee_angle])
+    lowest = min(max(run.angle[0], -limit.knee_angle), limit.knee_angle - GRID_STEP)
+    attached = np.array([lowest, limit.knee_angle])
     filled, _ = _laid_down(grid, "moment", attached, np.full(2, thin.moment_quarter_chord))
     return filled, np.zeros_like(covered)
 
@@ -271,7 +300,11 @@ def _insert_between(grid: FloatArray, columns: list[LiftColumn], reynolds: float
 
 
 def drag_columns(
-    grid: FloatArray, columns: Sequence[LiftColumn], runs: Sequence[Sweep]
+    grid: FloatArray,
+    columns: Sequence[LiftColumn],
+    runs: Sequence[Sweep],
+    *,
+    thin: ThinAirfoil | None,
 ) -> tuple[FloatArray, BoolArray]:
     """Drag for every column.
 
@@ -282,6 +315,8 @@ def drag_columns(
     columns : sequence of LiftColumn
     runs : sequence of Sweep
         Rising, with drag.
+    thin : ThinAirfoil or None
+        Tells whether the section is symmetric.
 
     Returns
     -------
@@ -291,6 +326,8 @@ def drag_columns(
     """
     groups = group_repeats([run.reynolds for run in runs])
     merged = [_smooth_drag(merge_drag([runs[i] for i in group])) for group in groups]
+    if symmetric(thin):
+        merged = [mirrored(run) for run in merged]
     found = [
         drag_over_angle(
             grid,

@@ -6,6 +6,7 @@ import numpy as np
 from numpy.typing import NDArray
 from scipy.optimize import lsq_linear
 
+from solver.section.lift_limits import zero_lift
 from solver.section.sweeps import LOOP_GAP, Sweep
 
 FloatArray = NDArray[np.float64]
@@ -158,3 +159,34 @@ def merge_drag(runs: list[Sweep]) -> Sweep:
     if means[0].size < 2:
         means = columns
     return Sweep(reynolds, means[0], means[1], means[2])
+
+
+def mirrored(run: Sweep) -> Sweep:
+    """Complete a run of a symmetric section by what it shows on the other side.
+
+    Parameters
+    ----------
+    run : Sweep
+        Ascending in angle.
+
+    Returns
+    -------
+    Sweep
+        With the readings whose mirror image lies beyond its ends: lift and moment
+        change sign with the angle, drag does not. The mirror stands at the measured
+        angle of zero lift, so that an error of the angle's datum makes no step.
+    """
+    peak = float(run.angle[np.argmax(run.lift)])
+    image = 2.0 * zero_lift(run.angle, run.lift, peak_angle=peak) - run.angle
+    added = (image < run.angle[0] - CLOSEST) | (image > run.angle[-1] + CLOSEST)
+    angle = np.concatenate([run.angle, image[added]])
+    order = np.argsort(angle)
+
+    def joined(values: FloatArray | None, sign: float) -> FloatArray | None:
+        if values is None:
+            return None
+        return np.concatenate([values, sign * values[added]])[order]
+
+    lift = np.concatenate([run.lift, -run.lift[added]])[order]
+    drag, moment = joined(run.drag, 1.0), joined(run.moment, -1.0)
+    return Sweep(run.reynolds, angle[order], lift, drag, moment, run.rising)
