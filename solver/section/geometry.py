@@ -135,7 +135,8 @@ def naca_outline(digits: str, *, points: int = 161, closed: bool = True) -> Outl
     Raises
     ------
     InputError
-        If the digits name no section, or `points` is even or out of range.
+        If the digits name no section or one so thick and bent at its nose that its
+        surfaces fold, or `points` is even or out of range.
 
     References
     ----------
@@ -153,10 +154,12 @@ def naca_outline(digits: str, *, points: int = 161, closed: bool = True) -> Outl
     camber = section.camber.height(x)
     upper_x, upper_y = x - half * np.sin(angle), camber + half * np.cos(angle)
     lower_x, lower_y = x + half * np.sin(angle), camber - half * np.cos(angle)
+    outline_x = np.concatenate([upper_x[::-1], lower_x[1:]])
+    near = int(np.argmin(outline_x))
+    if np.any(np.diff(outline_x[: near + 1]) >= 0.0) or np.any(np.diff(outline_x[near:]) <= 0.0):
+        raise InputError("digits", digits, "of a section whose outline does not fold over itself")
     return Outline(
-        f"NACA {section.digits}",
-        np.concatenate([upper_x[::-1], lower_x[1:]]),
-        np.concatenate([upper_y[::-1], lower_y[1:]]),
+        f"NACA {section.digits}", outline_x, np.concatenate([upper_y[::-1], lower_y[1:]])
     )
 
 

@@ -9,10 +9,15 @@ import numpy as np
 from numpy.typing import NDArray
 from scipy.interpolate import BSpline, CubicSpline
 
+from solver.errors import InputError
+
 FloatArray = NDArray[np.float64]
 
 ROUNDS = 12
 """Newton steps at most; three to six are usual."""
+PATIENCE = 2
+"""Steps that bring no better line after which the best so far is kept: a camber line bent
+close to the nose of a thick section cannot be found to the last digit."""
 SETTLED = 1e-9
 """Change of the line over chord below which it is taken as found."""
 KNOTS = (0.0, 0.1, 0.2, 0.3, 0.4, 0.5, 0.6, 0.7, 0.8, 0.9, 0.95, 1.0)
@@ -104,12 +109,24 @@ def skin(x: FloatArray, y: FloatArray) -> Skin:
     -------
     Skin
         The curve.
+
+    Raises
+    ------
+    InputError
+        Named ``coordinates``, if x does not do so.
     """
     foremost = foremost_point(np.column_stack([x, y]))
     near = int(np.argmin(x))
     side = np.where(np.arange(len(x)) < near, 1.0, -1.0)
     side[near] = 1.0 if y[near] > foremost[1] else -1.0
     t = side * np.sqrt(np.maximum(x - foremost[0], 0.0))
+    if not np.all(np.diff(t) < 0.0):
+        at = int(np.argmax(np.diff(t) >= 0.0)) + 1
+        raise InputError(
+            "coordinates",
+            f"an outline that folds over itself at point {at}",
+            "of a section whose x falls to the leading edge and rises behind it",
+        )
     return Skin(CubicSpline(t[::-1], y[::-1]), float(foremost[0]))
 
 
@@ -134,6 +151,11 @@ def midline(surface: Skin, *, trailing_edge: FloatArray, points: int) -> Midline
     Midline
         From the nose to the trailing edge.
 
+    Raises
+    ------
+    InputError
+        Named ``coordinates``, if no camber line can be begun.
+
     Notes
     -----
     With h half the thickness, a change of the line's slope by s turns its
@@ -150,25 +172,66 @@ def midline(surface: Skin, *, trailing_edge: FloatArray, points: int) -> Midline
     start = 0.5 * (surface.height(t) + surface.height(-t))
     basis = _basis()
     factors = np.linalg.lstsq(basis(x), start, rcond=None)[0]
+    best = None
+    worse = 0
     for _ in range(ROUNDS):
         line = BSpline(basis.t, factors, basis.k)
-        nose, distance = _distances(line, skin_x, skin_y)
-        x = nose + share * (trailing_edge[0] - nose)
-        t = np.sqrt(x - nose)
-        upper, lower = distance(t), -distance(-t)
-        half = 0.5 * (upper + lower)
-        spread = 0.25 * (distance(t, 1) + distance(-t, 1))  # t dh/dx
-        turn = np.append(2.0 * spread[0] ** 2, half[1:] * spread[1:] / t[1:])
-        mismatch = 0.5 * (upper - lower) * np.sqrt(1.0 + line(x, 1) ** 2)
-        mismatch[-1] = trailing_edge[1] - line(x[-1])
-        system = basis(x) + turn[:, None] * basis(x, 1)
-        system[-1] = basis(x[-1:])[0]
-        step = np.linalg.lstsq(weight[:, None] * system, weight * mismatch, rcond=None)[0]
-        factors = factors + step
-        if np.abs(step).max() < SETTLED:
+        trial = _measure(line, skin_x, skin_y, share=share, trailing_edge=trailing_edge)
+        if trial is None:
             break
-    line = BSpline(basis.t, factors, basis.k)
-    return Midline(x, line(x), line(x, 1), half, _nose_radius(distance))
+        if best is None or trial.error < best.error:
+            best, worse = trial, 0
+        else:
+            worse += 1
+        x = trial.x
+        system = basis(x) + trial.turn[:, None] * basis(x, 1)
+        system[-1] = basis(x[-1:])[0]
+        step = np.linalg.lstsq(weight[:, None] * system, weight * trial.mismatch, rcond=None)[0]
+        factors = factors + step
+        if worse >= PATIENCE or np.abs(step).max() < SETTLED:
+            break
+    if best is None:
+        raise InputError(
+            "coordinates", "a skin that folds over it", "those of a section with a camber line"
+        )
+    line = best.line
+    return Midline(best.x, line(best.x), line(best.x, 1), best.half, _nose_radius(best.distance))
+
+
+@dataclass(frozen=True, eq=False)
+class _Trial:
+    """A line tried, and how far its normals miss equal distances.
+
+    `mismatch` and `turn` are e and h h' of :func:`midline`, `error` the rms of the former.
+    """
+
+    line: BSpline
+    x: FloatArray
+    half: FloatArray
+    distance: CubicSpline
+    mismatch: FloatArray
+    turn: FloatArray
+    error: float
+
+
+def _measure(
+    line: BSpline, x: FloatArray, y: FloatArray, *, share: FloatArray, trailing_edge: FloatArray
+) -> _Trial | None:
+    """Measure the skin about a line; None where feet of normals fold over one another."""
+    found = _distances(line, x, y)
+    if found is None:
+        return None
+    nose, distance = found
+    place = nose + share * (trailing_edge[0] - nose)
+    t = np.sqrt(place - nose)
+    upper, lower = distance(t), -distance(-t)
+    half = 0.5 * (upper + lower)
+    spread = 0.25 * (distance(t, 1) + distance(-t, 1))  # t dh/dx
+    turn = np.append(2.0 * spread[0] ** 2, half[1:] * spread[1:] / t[1:])
+    mismatch = 0.5 * (upper - lower) * np.sqrt(1.0 + line(place, 1) ** 2)
+    mismatch[-1] = trailing_edge[1] - line(place[-1])
+    error = float(np.sqrt(np.mean(mismatch**2)))
+    return _Trial(line, place, half, distance, mismatch, turn, error)
 
 
 @lru_cache(maxsize=1)
@@ -178,11 +241,12 @@ def _basis() -> BSpline:
     return BSpline(knots, np.eye(len(KNOTS) + 2), 3)
 
 
-def _distances(line: BSpline, x: FloatArray, y: FloatArray) -> tuple[float, CubicSpline]:
+def _distances(line: BSpline, x: FloatArray, y: FloatArray) -> tuple[float, CubicSpline] | None:
     """Distance of the skin from a line, upper side positive, over t.
 
     Returns where along x the line leaves the nose, x_n, and the distances as a
-    spline over t, where x_n + t^2 is the foot of the normal.
+    spline over t, where x_n + t^2 is the foot of the normal. None where the feet
+    do not follow one another as the points of the skin do.
     """
     foot = x.copy()
     for _ in range(6):
@@ -196,9 +260,13 @@ def _distances(line: BSpline, x: FloatArray, y: FloatArray) -> tuple[float, Cubi
     curve = CubicSpline(along, foot)
     near = float(along[np.argmin(foot)])
     turning = curve.derivative().roots(extrapolate=False)
+    if not turning.size:
+        return None
     at = float(turning[np.argmin(np.abs(turning - near))])
     nose = min(float(curve(at)), float(foot.min()))
     t = np.where(along < at, 1.0, -1.0) * np.sqrt(foot - nose)
+    if not np.all(np.diff(t) < 0.0):
+        return None
     return nose, CubicSpline(t[::-1], off[::-1])
 
 

@@ -149,6 +149,35 @@ def test_the_camber_line_is_the_one_the_section_was_made_from(digits):
     np.testing.assert_allclose(line.slope, camber.slope(line.x), atol=6e-3)
 
 
+@pytest.mark.parametrize("digits", ["22018", "42018", "9215", "6318", "6721"])
+def test_thick_and_strongly_bent_sections_are_measured_all_the_same(digits):
+    # Their camber bends within a nose radius or two, where the line is not well defined:
+    # what is left is looser, but nothing runs away.
+    outline = naca_outline(digits)
+    ratio = int(digits[-2:]) / 100.0
+    camber = naca_section(digits).camber
+    assert max_thickness(outline).value == pytest.approx(ratio, abs=5e-4)
+    assert leading_edge_radius(outline) == pytest.approx(1.1019 * ratio**2, rel=0.25)
+    line = camber_line(outline)
+    behind = line.x > 0.05
+    np.testing.assert_allclose(line.y[behind], camber.height(line.x[behind]), atol=4e-3)
+
+
+def test_digits_whose_outline_folds_over_itself_are_refused():
+    with pytest.raises(InputError, match="digits must be of a section whose outline") as caught:
+        naca_outline("9124")
+    assert caught.value.name == "digits"
+
+
+def test_an_outline_that_folds_over_itself_cannot_be_measured():
+    plain = naca_outline("0012")
+    x = plain.x.copy()
+    x[60] = x[58]
+    with pytest.raises(InputError, match="folds over itself at point 6") as caught:
+        max_thickness(Outline("folded", x, plain.y))
+    assert caught.value.name == "coordinates"
+
+
 def test_camber_of_a_section_upside_down_is_negative():
     outline = naca_outline("4412")
     found = max_camber(Outline("inverted", outline.x[::-1], -outline.y[::-1]))
