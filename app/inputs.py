@@ -11,7 +11,7 @@ from __future__ import annotations
 import hashlib
 import re
 from collections.abc import Iterator
-from dataclasses import dataclass, field, fields, replace
+from dataclasses import dataclass, field, fields
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -122,7 +122,8 @@ class SectionTables:
     outline : numpy.ndarray, shape (n, 2)
         Coordinates as read: x and y, in any unit of length. [-]
     lift, drag : tuple of Sweep
-        The wind-tunnel runs as read; either may be empty.
+        The wind-tunnel runs as read, whose arrays are read-only by themselves;
+        either may be empty.
     digest : str
         Sha256 of all of it, found here.
     """
@@ -135,8 +136,8 @@ class SectionTables:
 
     def __post_init__(self) -> None:
         object.__setattr__(self, "outline", _read_only(self.outline))
-        object.__setattr__(self, "lift", tuple(_frozen_sweep(run) for run in self.lift))
-        object.__setattr__(self, "drag", tuple(_frozen_sweep(run) for run in self.drag))
+        object.__setattr__(self, "lift", tuple(self.lift))
+        object.__setattr__(self, "drag", tuple(self.drag))
         content = hashlib.sha256(self.outline_name.encode())
         _hash_array(content, self.outline)
         for kind, runs in (("lift", self.lift), ("drag", self.drag)):
@@ -240,15 +241,6 @@ def _read_only(array: FloatArray) -> FloatArray:
     copy = np.array(array, dtype=np.float64)
     copy.setflags(write=False)
     return copy
-
-
-def _frozen_sweep(run: Sweep) -> Sweep:
-    arrays = {
-        entry.name: _read_only(value)
-        for entry in fields(run)
-        if isinstance(value := getattr(run, entry.name), np.ndarray)
-    }
-    return replace(run, **arrays)  # type: ignore[arg-type]
 
 
 def _hash_array(content: hashlib._Hash, array: FloatArray) -> None:
