@@ -97,16 +97,7 @@ def estimate_polar(outline: Outline, *, reynolds: Sequence[float] = REYNOLDS) ->
     InputError
         Named ``reynolds``, if it is empty, does not ascend or is out of range.
     """
-    numbers = np.array(reynolds, dtype=np.float64)
-    if not (
-        numbers.ndim == 1
-        and numbers.size
-        and np.all(np.diff(numbers) > 0.0)
-        and np.all((numbers >= LOWEST_REYNOLDS) & (numbers <= HIGHEST_REYNOLDS))
-    ):
-        raise InputError(
-            "reynolds", reynolds, f"ascending, {LOWEST_REYNOLDS:g} to {HIGHEST_REYNOLDS:g}"
-        )
+    numbers = _checked(reynolds)
     shape = shape_of(outline)
     steps = round(float(ANGLE_LIMIT / ANGLE_STEP))
     angle = np.linspace(-ANGLE_LIMIT, ANGLE_LIMIT, 2 * steps + 1)
@@ -139,6 +130,21 @@ def estimate_polar(outline: Outline, *, reynolds: Sequence[float] = REYNOLDS) ->
         beyond_stall=curve.stall,
         unknown=_unknown(numbers, burst),
     )
+
+
+def _checked(reynolds: Sequence[float]) -> FloatArray:
+    """Refuse Reynolds numbers that no estimate can be tabled at."""
+    numbers = np.array(reynolds, dtype=np.float64)
+    if not (
+        numbers.ndim == 1
+        and numbers.size
+        and np.all(np.diff(numbers) > 0.0)
+        and np.all((numbers >= LOWEST_REYNOLDS) & (numbers <= HIGHEST_REYNOLDS))
+    ):
+        raise InputError(
+            "reynolds", reynolds, f"ascending, {LOWEST_REYNOLDS:g} to {HIGHEST_REYNOLDS:g}"
+        )
+    return numbers
 
 
 def _unknown(reynolds: FloatArray, burst: FloatArray) -> tuple[tuple[float, float], ...]:
