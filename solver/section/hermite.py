@@ -76,6 +76,9 @@ def node_slopes(x: FloatArray, y: FloatArray) -> FloatArray:
     rough = np.abs(fine - coarse) > ROUGH * scale
     if not rough.any():
         return fine
+    # The edge of a jump, between two rough nodes, can look smooth by itself.
+    rough[1:] |= rough[:-1].copy()
+    rough[:-1] |= rough[1:].copy()
     limited = PchipInterpolator(x, y, axis=0).derivative()(x)
     return np.where(rough, limited, fine)
 
