@@ -124,6 +124,8 @@ class SectionTables:
     lift, drag : tuple of Sweep
         The wind-tunnel runs as read, whose arrays are read-only by themselves;
         either may be empty.
+    source : str
+        What the tables say about where they come from.
     digest : str
         Sha256 of all of it, found here.
     """
@@ -132,13 +134,14 @@ class SectionTables:
     outline: FloatArray
     lift: tuple[Sweep, ...]
     drag: tuple[Sweep, ...]
+    source: str = ""
     digest: str = field(init=False)
 
     def __post_init__(self) -> None:
         object.__setattr__(self, "outline", _read_only(self.outline))
         object.__setattr__(self, "lift", tuple(self.lift))
         object.__setattr__(self, "drag", tuple(self.drag))
-        content = hashlib.sha256(self.outline_name.encode())
+        content = hashlib.sha256(repr((self.outline_name, self.source)).encode())
         _hash_array(content, self.outline)
         for kind, runs in (("lift", self.lift), ("drag", self.drag)):
             for run in runs:

@@ -13,6 +13,7 @@ import re
 from collections.abc import Mapping
 from contextlib import ExitStack
 from dataclasses import dataclass
+from functools import lru_cache
 from numbers import Real
 from pathlib import Path
 from typing import Any
@@ -306,16 +307,17 @@ def usable_digits(name: str, digits: str) -> str:
     InputError
         If they are neither four nor five usable digits.
     """
-    if len(digits) == 4:
-        if _NACA_FOUR.fullmatch(digits):
-            return digits
+    known = (_NACA_FOUR if len(digits) == 4 else _NACA_FIVE).fullmatch(digits)
+    if known and not _folds(digits):
+        return digits
+    if known:
+        requirement = "NACA and the digits of a section whose outline does not fold over itself"
+    elif len(digits) == 4:
         requirement = (
             "NACA and four digits: camber and its place both 0 or both 1 to 9, "
             "thickness 01 to 40 percent"
         )
     elif len(digits) == 5:
-        if _NACA_FIVE.fullmatch(digits):
-            return digits
         requirement = (
             "NACA and five digits: lift digit 1 to 6, camber place 1 to 5, "
             "0 for plain or 1 for reflexed (place 2 to 5), thickness 01 to 40 percent"
@@ -323,6 +325,18 @@ def usable_digits(name: str, digits: str) -> str:
     else:
         requirement = "NACA and four or five digits"
     raise InputError(name, f"NACA {digits}", requirement)
+
+
+@lru_cache(maxsize=256)
+def _folds(digits: str) -> bool:
+    """Whether a section is so thick and bent at its nose that its surfaces cross."""
+    from solver.section.geometry import naca_outline
+
+    try:
+        naca_outline(digits)
+    except InputError:
+        return True
+    return False
 
 
 def nearest(name: str, known: tuple[str, ...] | None = None) -> str:

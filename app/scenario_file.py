@@ -25,7 +25,13 @@ from app.scenario_error import (
     shown,
     unknown,
 )
-from app.tables import TableError, read_drag_table, read_lift_table, read_outline_table
+from app.tables import (
+    TableError,
+    read_drag_table,
+    read_lift_table,
+    read_outline_table,
+    table_source,
+)
 from solver.errors import InputError
 
 __all__ = ["ScenarioError", "read_scenario", "scenario_from_text"]
@@ -322,9 +328,16 @@ def read_section_tables(paths: Mapping[str, Path], *, file: str, key: str) -> Se
         lift = tuple(read_lift_table(paths["lift"]))
         entry = "drag"
         drag = tuple(read_drag_table(paths["drag"]))
+        said = [line for one in ("lift", "drag") for line in table_source(paths[one]).splitlines()]
     except TableError as error:
         raise ScenarioError(file, f"{key}.{entry}", f"cannot be used: {error}") from error
-    return SectionTables(outline_name=outline_name, outline=outline, lift=lift, drag=drag)
+    return SectionTables(
+        outline_name=outline_name,
+        outline=outline,
+        lift=lift,
+        drag=drag,
+        source="\n".join(dict.fromkeys(said)),
+    )
 
 
 def _table_path(value: object, file: str, key: str, folder: Path) -> Path:
