@@ -23,7 +23,7 @@ from app.components import FieldColumn, Footer, Message, Strip, Tabs
 from app.figures.look import static_text, theme
 from app.figures.station import Station
 from app.inputs import Inputs
-from app.page_state import field_groups, margin_tile, refusal, station_words
+from app.page_state import field_groups, margin_tile, own_copy, refusal, station_words
 from app.scenario import Scenario, field_list
 from app.sheets.balance import BalanceSheet
 from app.sheets.landing import LandingSheet
@@ -40,8 +40,8 @@ TITLE = "Halfspan"
 SHEETS: tuple[type[Sheet], ...] = (SectionSheet, WingSheet, BalanceSheet, SpeedSheet, LandingSheet)
 FIRST = WingSheet.name
 WRONG = (
-    "Something inside went wrong; the plots show the last good result. "
-    "The log file has the details."
+    "Something inside went wrong with that change, and it was taken back: "
+    "the plots show the last good result. The log file has the details."
 )
 
 NOTHING = "Something inside went wrong and nothing could be solved. The log file has the details."
@@ -82,8 +82,7 @@ class Session:
         self.footer = Footer(css_classes=["halfspan-footer"], **_WIDE)
         self._show_groups()
         with _Guard(self):
-            self._solve()
-            self._show()
+            self._show(self._solve(self.open))
 
     def layout(self) -> pn.viewable.Viewable:
         """Give the page.
@@ -131,22 +130,28 @@ class Session:
             try:
                 self._try(attempt)
             except InputError as error:
-                refusal = error
+                refused = error
                 continue
-            for name in attempt:
-                self.refused.pop(name, None)
-            self._show()
             return
-        self._refuse(refusal, values)
+        self._refuse(refused, values)
 
     def _try(self, values: Mapping[str, object]) -> None:
-        """Set, freeze and solve; on a refusal everything is as it was before."""
-        before = self.scenario.values()
+        """Set, solve and show; when any of it fails, all is as it was before."""
+        before, results = self.scenario.values(), self.results
         self.scenario.set_values(values)
         try:
-            self._solve()
-        except InputError:
+            solved = self._solve(self.open)
+        except Exception:
             self.scenario.set_values(before)
+            raise
+        for name in values:
+            self.refused.pop(name, None)
+        try:
+            self._show(solved)
+        except Exception:
+            self.scenario.set_values(before)
+            if results is not None:
+                self._show(results)
             raise
 
     def _refuse(self, error: InputError, values: Mapping[str, object]) -> None:
@@ -158,26 +163,24 @@ class Session:
         self._show_fields()
 
     def _open(self, name: str) -> None:
-        if name == self.open.name:
+        before, after = self.open, self.sheets[name]
+        if after is before:
             return
-        before, self.open = self.open, self.sheets[name]
-        self.open.station.point_at(before.station.share, held=before.station.held)
-        self._solve()
-        self._show()
+        after.station.point_at(before.station.share, held=before.station.held)
+        results = self._solve(after)
+        self.open = after
+        self._show(results)
         before.view.visible = False
         self.tabs.active = name
         self._show_groups()
 
     # What the page shows
 
-    def _solve(self) -> None:
-        self.results = self.analysis.run(self.scenario.freeze(), want=self.open.want)
+    def _solve(self, sheet: Sheet) -> Results:
+        return self.analysis.run(self.scenario.freeze(), want=sheet.want)
 
-    def _show(self) -> None:
-        results = self.results
-        if results is None:
-            return
-        self.notice = ""
+    def _show(self, results: Results) -> None:
+        self.results, self.notice = results, ""
         self.open.station.update(results)
         self.open.update(results)
         self.open.view.visible = True
@@ -253,30 +256,6 @@ def _box(name: str) -> dict[str, object]:
         "stylesheets": [static_text("layout.css")],
         "sizing_mode": "stretch_both",
     }
-
-
-def own_copy(scenario: Scenario) -> Scenario:
-    """Copy a scenario, so that two tabs do not move each other's sliders.
-
-    Parameters
-    ----------
-    scenario : Scenario
-        What to copy; its tables are shared, since nothing changes them.
-
-    Returns
-    -------
-    Scenario
-        Equal in every value.
-    """
-    copy = Scenario(
-        name=scenario.name,
-        author=scenario.author,
-        note=scenario.note,
-        sections=dict(scenario.sections),
-        folder=scenario.folder,
-    )
-    copy.set_values(scenario.values())
-    return copy
 
 
 def page(scenario: Scenario, analysis: Solves) -> pn.viewable.Viewable:

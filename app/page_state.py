@@ -1,4 +1,4 @@
-"""What the parts of the page are told: margins, fields and station as plain data."""
+"""What the page starts from, and what its parts are told: plain data."""
 
 from __future__ import annotations
 
@@ -8,9 +8,11 @@ from typing import Any
 
 from app.analysis.results import Margin
 from app.figures import words
-from app.scenario import Field
+from app.scenario import Field, Scenario
 from app.sheets.sheet import FieldGroup
 from solver.errors import InputError
+
+_SIGNS = {"at least": "≥", "at most": "≤"}
 
 
 def margin_tile(margin: Margin) -> dict[str, object]:
@@ -33,13 +35,16 @@ def margin_tile(margin: Margin) -> dict[str, object]:
     def share(value: float) -> float | None:
         return sign * (value - margin.limit) / scale if math.isfinite(value) else None
 
-    room = words.difference(margin.margin, margin.value, margin.unit)
+    found = math.isfinite(margin.value)
+    room = words.difference(margin.margin, margin.value, margin.unit) if found else ""
+    value, limit = words.number(margin.value, margin.unit), words.given(margin.limit, margin.unit)
     return {
         "key": margin.key,
         "label": margin.label,
-        "value": words.number(margin.value, margin.unit),
-        "limit": f"{margin.sense} {words.given(margin.limit, margin.unit)}",
-        "margin": room if math.isfinite(margin.value) else "",
+        "value": value,
+        "limit": f"{_SIGNS[margin.sense]} {limit}",
+        "margin": room,
+        "said": f"{margin.label} {value}, {margin.sense} {limit}, {margin.verdict}",
         "verdict": str(margin.verdict),
         "at": share(margin.value),
         "low": share(margin.low),
@@ -132,3 +137,27 @@ def station_words(row: Mapping[str, Any]) -> str:
         f"Re {words.reynolds(1e3 * row['re_landing'])}, "
         f"lift {words.number(row['lift_landing'])} of {words.number(row['limit_landing'])}"
     )
+
+
+def own_copy(scenario: Scenario) -> Scenario:
+    """Copy a scenario, so that two tabs do not move each other's sliders.
+
+    Parameters
+    ----------
+    scenario : Scenario
+        What to copy; its tables are shared, since nothing changes them.
+
+    Returns
+    -------
+    Scenario
+        Equal in every value.
+    """
+    copy = Scenario(
+        name=scenario.name,
+        author=scenario.author,
+        note=scenario.note,
+        sections=dict(scenario.sections),
+        folder=scenario.folder,
+    )
+    copy.set_values(scenario.values())
+    return copy

@@ -8,6 +8,7 @@ from bokeh.models import ColumnDataSource
 from app.analysis.results import BalanceResult, Results
 from app.figures import look, words
 from app.figures.plot import Labels, Plot, TrustLine, add_reading, fit, new_figure
+from app.figures.speed_marks import SpeedMarks
 
 
 class ChordRuler(Plot):
@@ -52,7 +53,7 @@ class ChordRuler(Plot):
             line_color="line",
             line_width=2,
         )
-        self.above = Labels(plot, align="center", baseline="bottom")
+        self.above = Labels(plot, baseline="bottom")
         self.today = today
 
     def update(self, results: Results) -> None:
@@ -60,9 +61,9 @@ class ChordRuler(Plot):
         balance = results.balance
         today, limit = look.colour("today"), look.colour("limit")
         marks = [
-            (balance.forward_balance_percent, "circle", None, today, "forward", 1.55),
-            (balance.balance_percent, "circle", today, today, "balance point", 0.85),
-            (balance.neutral_point_percent, "triangle", limit, limit, "neutral point", 0.5),
+            (balance.forward_balance_percent, "circle", None, today, "forward", 1.65),
+            (balance.balance_percent, "circle", today, today, "balance point", 1.05),
+            (balance.neutral_point_percent, "triangle", limit, limit, "neutral point", 0.45),
         ]
         marks = [mark for mark in marks if np.isfinite(mark[0])]
         fit(self.x_range, [mark[0] for mark in marks], include=(-5.0, 105.0))
@@ -74,12 +75,13 @@ class ChordRuler(Plot):
         }
         self._feed_margin(results, balance)
         labels = [
-            (x, y, f"{text} {words.number(x, '%')}", line) for x, _, _, line, text, y in marks
+            (x, y, f"{text} {words.number(x, '%')}", line, "center")
+            for x, _, _, line, text, y in marks
         ]
         if np.isfinite(balance.static_margin_percent):
             middle = 0.5 * (balance.balance_percent + balance.neutral_point_percent)
             said = f"static margin {words.number(balance.static_margin_percent, '%')}"
-            labels.append((middle, -1.15, said, look.colour("outline")))
+            labels.append((middle, -1.15, said, look.colour("outline"), "center"))
         self.above.feed(labels)
 
     def _feed_margin(self, results: Results, balance: BalanceResult) -> None:
@@ -123,12 +125,10 @@ class ElevatorOverSpeed(Plot):
         )
         plot.hspan("inner", source=self.stops, line_color=limit, line_width=look.THICK)
         plot.hspan(y=[0.0], line_color=look.colour("outline"), line_width=0.75)
-        self.speeds = ColumnDataSource({"x": [], "colour": []})
-        plot.vspan("x", source=self.speeds, line_color="colour", line_width=look.THIN)
+        self.speeds = SpeedMarks(plot)
         self.nominal = TrustLine(plot, colour=today, width=2.5)
         self.forward = TrustLine(plot, colour=look.colour("trim"), width=2.5)
         self.labels = Labels(plot)
-        self.tops = Labels(plot, baseline="top")
         add_reading(
             plot,
             [*self.nominal.renderers, *self.forward.renderers],
@@ -143,7 +143,7 @@ class ElevatorOverSpeed(Plot):
         fit(self.x_range, speed)
         reach = 1.25 * travel
         fit(self.y_range, [-reach, reach])
-        far = 10.0 * travel
+        far = travel + 0.07 * self.height
         self.stops.data = {"inner": [travel, -travel], "outer": [far, -far]}
         self.nominal.feed(speed, balance.elevator_nominal_deg, balance.trust)
         self.forward.feed(speed, balance.elevator_forward_deg, balance.trust)
@@ -176,30 +176,4 @@ class ElevatorOverSpeed(Plot):
                 )
             )
         self.labels.feed(rows)
-        mark_speeds(self.speeds, self.tops, results, top=0.94 * balance.elevator_travel_deg)
-
-
-def mark_speeds(source: ColumnDataSource, labels: Labels, results: Results, *, top: float) -> None:
-    """Mark today's landing and cruise speed.
-
-    Parameters
-    ----------
-    source : ColumnDataSource
-        With columns x and colour.
-    labels : Labels
-        Written at the top.
-    results : Results
-        Whose inputs name the two speeds.
-    top : float
-        Where the words begin, in the unit of the vertical axis.
-    """
-    rows = []
-    for name, text, shade in (
-        ("landing_speed_m_s", "landing", "today"),
-        ("cruise_speed_m_s", "cruise", "cruise"),
-    ):
-        value = results.inputs.get(name)
-        if isinstance(value, (int, float)):
-            rows.append((float(value), f" {text}", look.colour(shade)))
-    source.data = {"x": [row[0] for row in rows], "colour": [row[2] for row in rows]}
-    labels.feed([(x, top, text, shade) for x, text, shade in rows])
+        self.speeds.feed(results, top=0.94 * balance.elevator_travel_deg)

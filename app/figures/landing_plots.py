@@ -64,7 +64,7 @@ class SpeedsOnOneAxis(Plot):
         self.least = ColumnDataSource({"x": [], "top": [], "bottom": []})
         plot.segment("x", "bottom", "x", "top", source=self.least, line_color=limit, line_width=2.5)
         self.labels = Labels(plot)
-        self.least_labels = Labels(plot, align="right")
+        self.least_labels = Labels(plot)
 
     def update(self, results: Results) -> None:
         """Feed the figure."""
@@ -135,6 +135,7 @@ class SpeedsOnOneAxis(Plot):
                     place + 0.3,
                     f"least {words.number(x, 'm/s')}",
                     look.colour("limit"),
+                    "right",
                 )
                 for x, place, _ in least
             ]

@@ -7,7 +7,7 @@ from bokeh.models import ColumnDataSource
 
 from app.analysis.results import PlanformResult, Results
 from app.figures import look, words
-from app.figures.plot import Labels, Plot, fit, keep_to_scale, new_figure
+from app.figures.plot import Label, Labels, Plot, fit, keep_to_scale, new_figure
 from app.figures.station import Station, chord_ends, half_span
 
 
@@ -83,7 +83,6 @@ class PlanformDrawing(Plot):
         )
         station.follow(plot)
         self.labels = Labels(plot)
-        self.centred = Labels(plot, align="center")
 
     def update(self, results: Results) -> None:
         """Feed the figure."""
@@ -105,8 +104,7 @@ class PlanformDrawing(Plot):
         }
         self.points.data = balance_columns(plan)
         self.key.data, words_of_key = _key(plan)
-        self.labels.feed(words_of_key)
-        self.centred.feed(_labels(results))
+        self.labels.feed([*_labels(results), *words_of_key])
 
 
 def balance_marks(plot: object) -> ColumnDataSource:
@@ -201,21 +199,22 @@ def _onset_patches(plan: PlanformResult, first: float, last: float) -> dict[str,
     return {"xs": [[float(v) for v in x], [float(-v) for v in x]], "ys": [y, y]}
 
 
-def _labels(results: Results) -> list[tuple[float, float, str, str]]:
+def _labels(results: Results) -> list[Label]:
     plan, landing = results.planform, results.landing
     today, limit = look.colour("today"), look.colour("limit")
     aside = 0.02 * half_span(plan)
     chord_end = plan.mean_chord_x_m + plan.mean_chord_m
-    rows = [
+    rows: list[Label] = [
         (
             plan.mean_chord_y_m,
             chord_end + 2.2 * aside,
             f"mean aerodynamic chord {words.number(1e3 * plan.mean_chord_m, 'mm')}",
             today,
+            "center",
         ),
     ]
     if np.isfinite(landing.onset_from) and np.isfinite(landing.onset_to):
         place = 0.5 * (landing.onset_from + landing.onset_to) * half_span(plan)
         lead, _ = chord_ends(plan, np.array([place]))
-        rows.append((-place, float(lead[0]) - 2.2 * aside, "stall begins here", limit))
+        rows.append((-place, float(lead[0]) - 2.2 * aside, "stall begins here", limit, "center"))
     return rows

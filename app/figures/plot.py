@@ -22,7 +22,7 @@ from app.analysis.results import Results, Trust
 from app.figures import look
 
 PLOT_HEIGHT = 190
-DASHES = {Trust.VALID: "solid", Trust.EXTRAPOLATED: "dashed", Trust.INDICATIVE: "dotted"}
+DASHES = {Trust.VALID: "solid", Trust.EXTRAPOLATED: "8 4", Trust.INDICATIVE: "2 3"}
 NAMES = {Trust.VALID: "valid", Trust.EXTRAPOLATED: "extrapolated", Trust.INDICATIVE: "indicative"}
 _FILL_LEAST = 0.45  # a range filled less than this is drawn in again
 
@@ -304,6 +304,10 @@ def keep_to_scale(plot: figure) -> None:
     plot.y_range.js_on_change("end", callback)
 
 
+Label = tuple[float, float, str, str] | tuple[float, float, str, str, str]
+"""Place x and y, words, colour; and ``"left"``, ``"center"`` or ``"right"``."""
+
+
 class Labels:
     """Words beside lines and points, in the colour of what they name.
 
@@ -311,45 +315,53 @@ class Labels:
     ----------
     plot : figure
         Where to write.
-    align, baseline : str
-        How the words sit at their point.
+    baseline : str
+        How the words sit at the height of their point.
+    chips : bool
+        Lay a piece of light paper under the words, where they stand on colour.
     """
 
-    def __init__(self, plot: figure, *, align: str = "left", baseline: str = "middle") -> None:
-        self.source = ColumnDataSource({"x": [], "y": [], "text": [], "colour": []})
+    def __init__(self, plot: figure, *, baseline: str = "middle", chips: bool = False) -> None:
+        self.source = ColumnDataSource({name: [] for name in _LABEL_COLUMNS})
         self.renderer = plot.text(
             "x",
             "y",
             text="text",
             source=self.source,
             text_color="colour",
-            text_align=align,
+            text_align="align",
             text_baseline=baseline,
             text_font_size=look.token("plot-text"),
             text_font=value(look.FONT),
             level="annotation",
         )
+        if chips:
+            self.renderer.glyph.update(
+                background_fill_color=look.token("card"),
+                background_fill_alpha=0.85,
+                padding=2,
+                border_radius=2,
+            )
 
-    def feed(self, labels: Iterable[tuple[float, float, str, str]]) -> None:
+    def feed(self, labels: Iterable[Label]) -> None:
         """Write words.
 
         Parameters
         ----------
-        labels : iterable of (x, y, text, colour)
-            Those at a not-finite place are left out.
+        labels : iterable of tuple
+            Rows as in `Label`; those at a not-finite place are left out.
         """
-        kept = [row for row in labels if math.isfinite(row[0]) and math.isfinite(row[1])]
-        x, y, text, colours = (
-            (list(column) for column in zip(*kept, strict=True))
-            if kept
-            else (
-                [],
-                [],
-                [],
-                [],
-            )
-        )
-        self.source.data = {"x": x, "y": y, "text": text, "colour": colours}
+        kept = [
+            (*row[:4], row[4] if len(row) > 4 else "left")
+            for row in labels
+            if math.isfinite(row[0]) and math.isfinite(row[1])
+        ]
+        self.source.data = {
+            name: [row[at] for row in kept] for at, name in enumerate(_LABEL_COLUMNS)
+        }
+
+
+_LABEL_COLUMNS = ("x", "y", "text", "colour", "align")
 
 
 def add_reading(

@@ -60,7 +60,7 @@ class LargestLift(SectionPlot):
         self.renderer = plot.multi_line(
             "xs", "ys", source=self.line, line_color=limit, line_width=2.5, line_dash="dash"
         )
-        self.labels = Labels(plot, align="center", baseline="bottom")
+        self.labels = Labels(plot, baseline="bottom")
         self.marks = [
             station.mark_point(plot, f"re_{name}", f"lift_{name}", condition=name)
             for name in CONDITIONS
@@ -92,7 +92,11 @@ class LargestLift(SectionPlot):
             "left": [first / 1e3 for first, _ in section.unknown_reynolds],
             "right": [last / 1e3 for _, last in section.unknown_reynolds],
         }
-        fit(self.y_range, section.largest_lift_low, section.largest_lift_high)
+        seen = [section.largest_lift_low, section.largest_lift_high]
+        if "wing" in section.role:
+            # So that the room between a station's lift and its limit is seen.
+            seen.append(np.array([np.max(results.landing.landing_span.lift)]))
+        fit(self.y_range, *seen)
         self._feed_ranges(section)
 
     def _feed_ranges(self, section: SectionResult) -> None:
@@ -115,6 +119,7 @@ class LargestLift(SectionPlot):
                     self.bottom + (0.03 + 0.09 * index) * self.height,
                     text,
                     colour,
+                    "center",
                 )
                 for index, ((low, high), colour, text) in enumerate(ranges)
             ]

@@ -216,7 +216,7 @@ class RoomAlongSpan(Plot):
         plot.varea("x", "low", "high", source=self.band, fill_color=today, fill_alpha=0.15)
         plot.hspan(y=[0.0], line_color=look.colour("limit"), line_width=look.THICK)
         self.room = TrustLine(plot, colour=today, width=2.5)
-        self.least = Labels(plot, align="center", baseline="top")
+        self.least = Labels(plot, baseline="top")
         self.least_mark = ColumnDataSource({"x": [], "y": []})
         plot.scatter(
             "x",
@@ -258,7 +258,7 @@ class RoomAlongSpan(Plot):
         tip = float(span.y_m[-1])
         inside = min(max(place, 0.16 * tip), 0.84 * tip)
         text = f"least left, {words.number(room)}"
-        self.least.feed([(inside, room - below, text, look.colour("limit"))])
+        self.least.feed([(inside, room - below, text, look.colour("limit"), "center")])
 
 
 class ReynoldsAlongSpan(Plot):
@@ -301,7 +301,7 @@ class ReynoldsAlongSpan(Plot):
         self.lines = {
             name: TrustLine(plot, colour=condition_colour(name), width=2.5) for name in conditions
         }
-        self.labels = Labels(plot, align="right")
+        self.labels = Labels(plot)
         station.mark_across(plot)
         for name in conditions:
             station.mark_point(plot, "y", f"re_{name}", condition=name)
@@ -330,7 +330,7 @@ class ReynoldsAlongSpan(Plot):
                 below=-above,
                 share=0.98,
             )
-            rows.append(row)
+            rows.append((*row, "right"))
         self.labels.feed(rows)
         self.unknown.data = _unknown(results, 0.0, half, self.top)
 

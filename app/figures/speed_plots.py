@@ -8,10 +8,10 @@ from dataclasses import dataclass
 import numpy as np
 from bokeh.models import ColumnDataSource
 
-from app.analysis.results import FloatArray, Results, SweepResult, Trust
+from app.analysis.results import FloatArray, Margin, Results, SweepResult, Trust
 from app.figures import look, words
-from app.figures.balance_plots import mark_speeds
-from app.figures.plot import Labels, Plot, TrustLine, add_reading, fit, new_figure
+from app.figures.plot import Label, Labels, Plot, TrustLine, add_reading, fit, new_figure
+from app.figures.speed_marks import SpeedMarks
 
 SPEED = "true airspeed [m/s]"
 _PARTS = (
@@ -51,10 +51,8 @@ class DragOverSpeed(Plot):
                 hatch_weight=0.75,
             )
         self.total = TrustLine(plot, colour=look.colour("outline"), width=2.5)
-        self.speeds = ColumnDataSource({"x": [], "colour": []})
-        plot.vspan("x", source=self.speeds, line_color="colour", line_width=look.THIN)
-        self.labels = Labels(plot, align="right")
-        self.tops = Labels(plot, baseline="top")
+        self.speeds = SpeedMarks(plot)
+        self.labels = Labels(plot, chips=True)
         add_reading(
             plot, self.total.renderers, [("speed", "@x{0.0} m/s"), ("drag in all", "$y{0.00} N")]
         )
@@ -67,7 +65,8 @@ class DragOverSpeed(Plot):
         found = (sweep.trust != Trust.NOT_CONVERGED) & np.isfinite(sweep.total)
         speed = np.asarray(sweep.speed_m_s)[found]
         fit(self.x_range, sweep.speed_m_s)
-        fit(self.y_range, _useful(sweep.total[found]), include=(0.0,))
+        # Room at the top for the names of the speeds.
+        fit(self.y_range, 1.15 * _useful(sweep.total[found]), include=(0.0,))
         columns: dict[str, list[float]] = {"x": speed.tolist()}
         below = np.zeros(speed.shape)
         edges = {}
@@ -79,7 +78,7 @@ class DragOverSpeed(Plot):
         self.stack.data = columns
         self.total.feed(sweep.speed_m_s, sweep.total, sweep.trust)
         self.labels.feed(_part_labels(speed, edges, self.top))
-        mark_speeds(self.speeds, self.tops, results, top=self.top)
+        self.speeds.feed(results, top=self.top)
 
 
 def _useful(values: FloatArray) -> FloatArray:
@@ -89,9 +88,9 @@ def _useful(values: FloatArray) -> FloatArray:
 
 def _part_labels(
     speed: FloatArray, edges: dict[str, tuple[FloatArray, FloatArray]], top: float
-) -> list[tuple[float, float, str, str]]:
+) -> list[Label]:
     """Write each part's name where its layer is thick enough to carry it."""
-    rows = []
+    rows: list[Label] = []
     for part, text, _ in _PARTS:
         low, high = edges[part]
         thick = np.where(high <= 1.15 * top, high - low, 0.0)
@@ -100,7 +99,7 @@ def _part_labels(
             at = thick.size - 1 if right else int(np.argmax(thick))
             at = min(max(at, thick.size // 3), thick.size - 1)
             middle = 0.5 * float(low[at] + high[at])
-            rows.append((float(speed[at]), middle, f"{text} ", look.colour("outline")))
+            rows.append((float(speed[at]), middle, text, look.token("ink"), "right"))
     return rows
 
 
@@ -200,8 +199,7 @@ class CurveOverSpeed(Plot):
             hatch_weight=1,
         )
         plot.hspan("edge", source=self.limit, line_color=limit, line_width=look.THICK)
-        self.speeds = ColumnDataSource({"x": [], "colour": []})
-        plot.vspan("x", source=self.speeds, line_color="colour", line_width=look.THIN)
+        self.speeds = SpeedMarks(plot)
         self.line = TrustLine(plot, colour=look.colour("outline"), width=2.5)
         self.here = ColumnDataSource({"x": [], "y": []})
         plot.scatter(
@@ -224,8 +222,7 @@ class CurveOverSpeed(Plot):
             line_color=None,
         )
         self.labels = Labels(plot, baseline="bottom")
-        self.best_label = Labels(plot, align="center", baseline="bottom")
-        self.tops = Labels(plot, baseline="top")
+        self.best_label = Labels(plot)
         unit = f" {curve.unit}" if curve.unit else ""
         add_reading(
             plot,
@@ -240,25 +237,29 @@ class CurveOverSpeed(Plot):
             return
         values, speed = np.asarray(self.curve.values(sweep)), np.asarray(sweep.speed_m_s)
         found = (sweep.trust != Trust.NOT_CONVERGED) & np.isfinite(values)
-        limit = self._limit(results)
+        asked = self._asked(results)
         fit(self.x_range, speed)
         if found.any():
             seen = values[found]
             seen = _useful(seen) if self.curve.margin == "cruise_power" else seen
-            fit(self.y_range, seen, [limit], include=(0.0,))
+            # Room at the top for the names of the speeds.
+            fit(self.y_range, seen, 1.18 * seen, [asked.limit if asked else np.nan], include=(0.0,))
+        self._feed_limit(results)
         self.line.feed(speed, values, sweep.trust)
         self._feed_points(results, sweep, speed[found], values[found])
-        mark_speeds(self.speeds, self.tops, results, top=self.top)
+        self.speeds.feed(results, top=self.top)
 
-    def _limit(self, results: Results) -> float:
-        found = next((m for m in results.margins if m.key == self.curve.margin), None)
-        if found is None:
+    def _asked(self, results: Results) -> Margin | None:
+        return next((m for m in results.margins if m.key == self.curve.margin), None)
+
+    def _feed_limit(self, results: Results) -> None:
+        asked = self._asked(results)
+        if asked is None:
             self.limit.data = {"edge": [], "far": []}
-            return float("nan")
+            return
         # The side that must not be reached is hatched.
-        far = 1e4 * abs(found.limit) + 1.0 if found.sense == "at most" else -1e4
-        self.limit.data = {"edge": [found.limit], "far": [far]}
-        return found.limit
+        depth = 0.07 * self.height * (1.0 if asked.sense == "at most" else -1.0)
+        self.limit.data = {"edge": [asked.limit], "far": [asked.limit + depth]}
 
     def _feed_points(
         self, results: Results, sweep: SweepResult, speed: FloatArray, values: FloatArray
@@ -277,11 +278,13 @@ class CurveOverSpeed(Plot):
         if np.isfinite(best) and speed.size and speed[0] <= best <= speed[-1]:
             value = float(np.interp(best, speed, values))
             self.best.data = {"x": [best], "y": [value]}
-            text = f"{self.curve.best_words} at {words.number(best, 'm/s')}"
+            text = f" {self.curve.best_words} at {words.number(best, 'm/s')}"
             # Under a hollow, over a hill: always off the curve.
             above = self.curve.margin != "cruise_power"
-            place = value + (0.04 if above else -0.14) * height
-            self.best_label.feed([(best, place, text, look.colour("body"))])
+            place = value + (0.09 if above else -0.11) * height
+            shade = look.colour("body")
+            right = best > self.left + 0.6 * self.width
+            self.best_label.feed([(best, place, text, shade, "right" if right else "left")])
         else:
             self.best.data = {"x": [], "y": []}
             self.best_label.feed([])

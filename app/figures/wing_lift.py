@@ -41,7 +41,6 @@ class WingLift(Plot):
             line_width=1.5,
         )
         self.labels = Labels(plot)
-        self.labels_left = Labels(plot, align="right")
         add_reading(
             plot,
             self.line.renderers,
@@ -76,9 +75,13 @@ class WingLift(Plot):
         height = self.height
         text = f"landing needs {words.number(needed)}"
         today, limit = look.colour("today"), look.colour("limit")
-        self.labels.feed([(left + 0.02 * across, needed + 0.06 * height, text, today)])
         said = f"stall begins at {words.number(onset[0], 'deg')}, {words.number(onset[1])}"
-        self.labels_left.feed([(onset[0] - 0.02 * across, onset[1] + 0.06 * height, said, limit)])
+        self.labels.feed(
+            [
+                (left + 0.02 * across, needed + 0.06 * height, text, today),
+                (onset[0] - 0.02 * across, onset[1] + 0.06 * height, said, limit, "right"),
+            ]
+        )
 
 
 def lift_needed(results: Results) -> float:

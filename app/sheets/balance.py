@@ -51,7 +51,7 @@ class BalanceSheet(Sheet):
 
     def build(self) -> Sequence[pn.viewable.Viewable]:
         """Make figures and words."""
-        self.shares, self.trim = words_card(), words_card()
+        self.shares, self.trim = words_card(), words_card("wide")
         return [
             self.card(PlanformDrawing(self.station, height=388), shape="large"),
             self.card(ElevatorOverSpeed()),

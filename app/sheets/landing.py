@@ -36,7 +36,7 @@ class LandingSheet(Sheet):
 
     def build(self) -> Sequence[pn.viewable.Viewable]:
         """Make figures and words."""
-        self.margins, self.said = words_card(), words_card()
+        self.margins, self.said = words_card("full"), words_card("tall")
         self.risks = words_card("wide")
         return [
             self.card(SpeedsOnOneAxis(), shape="wide"),

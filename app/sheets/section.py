@@ -47,7 +47,7 @@ class SectionSheet(Sheet):
         self.levels = Choice(
             self._choose_level, sizing_mode="stretch_width", css_classes=["halfspan-full"]
         )
-        self.facts, self.findings = words_card(), words_card()
+        self.facts, self.findings = words_card("tall"), words_card("wide")
         return [
             self.which,
             self.levels,
@@ -83,7 +83,7 @@ class SectionSheet(Sheet):
         self.findings.blocks = _findings(section)
 
     def _choose_section(self, message: Message) -> None:
-        self.chosen, self.only = float(message["choose"]), ALL
+        self.chosen, self.only = int(message["choose"]), ALL
         if self.results is not None:
             self.feed(self.results)
 

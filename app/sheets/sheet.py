@@ -130,7 +130,8 @@ class Sheet:
         plot : Plot
             What it shows.
         shape : str
-            ``"one"``, ``"wide"`` (two columns) or ``"large"`` (two by two).
+            ``"one"``, ``"wide"`` (two columns), ``"tall"`` (two rows) or ``"large"``
+            (two by two).
 
         Returns
         -------

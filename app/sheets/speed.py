@@ -40,7 +40,7 @@ class SpeedSheet(Sheet):
 
     def build(self) -> Sequence[pn.viewable.Viewable]:
         """Make figures and words."""
-        self.parts, self.best = words_card(), words_card()
+        self.parts, self.best = words_card("tall"), words_card("wide")
         return [
             self.card(DragOverSpeed()),
             self.card(CurveOverSpeed(POWER)),

@@ -36,7 +36,7 @@ class WingSheet(Sheet):
 
     def build(self) -> Sequence[pn.viewable.Viewable]:
         """Make figures and words."""
-        self.facts = words_card()
+        self.facts = words_card("wide")
         return [
             self.card(PlanformDrawing(self.station, height=388), shape="large"),
             self.card(LocalLift(self.station, "landing")),

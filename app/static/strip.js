@@ -26,7 +26,8 @@ function bar(margin) {
 function tile(margin, chosen, open) {
   return node("button", {
     class: `tile ${margin.verdict}`, type: "button", "data-key": margin.key,
-    "aria-pressed": margin.key === chosen ? "true" : "false", title: "Open its sheet and its reason",
+    "aria-pressed": margin.key === chosen ? "true" : "false", "aria-label": margin.said,
+    title: `${margin.said}. Opens its sheet and its reason.`,
     onclick: () => open(margin.key),
   },
     node("span", {class: "label"}, margin.label),

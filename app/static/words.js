@@ -5,8 +5,8 @@ const MAKE = {
   sentences: (block) => node("ul", {class: "sentences"},
     ...block.items.map((item) => node("li", {}, item))),
   note: (block) => node("p", {class: "note"}, block.text),
-  facts: (block) => node("dl", {}, ...block.items.flatMap(([name, value]) => [
-    node("dt", {}, name), node("dd", {}, value)])),
+  facts: (block) => node("dl", {}, ...block.items.map(([name, value]) =>
+    node("div", {}, node("dt", {}, name), node("dd", {}, value)))),
   table: (block) => node("table", {},
     node("thead", {}, node("tr", {}, ...block.head.map((cell) => node("th", {scope: "col"}, cell)))),
     node("tbody", {}, ...block.rows.map((row) => node("tr", {}, ...row.map(cell))))),

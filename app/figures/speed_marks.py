@@ -1,0 +1,49 @@
+"""Today's landing and cruise speed, marked on every plot over speed."""
+
+from __future__ import annotations
+
+from bokeh.models import ColumnDataSource
+from bokeh.plotting import figure
+
+from app.analysis.results import Results
+from app.figures import look
+from app.figures.plot import Labels
+
+_SPEEDS = (
+    # The landing speed is never above the cruise speed: words stand outside the two.
+    ("landing_speed_m_s", "landing ", "today", "right"),
+    ("cruise_speed_m_s", " cruise", "cruise", "left"),
+)
+
+
+class SpeedMarks:
+    """Two upright lines with their names.
+
+    Parameters
+    ----------
+    plot : figure
+        With speed across.
+    """
+
+    def __init__(self, plot: figure) -> None:
+        self.source = ColumnDataSource({"x": [], "colour": []})
+        plot.vspan("x", source=self.source, line_color="colour", line_width=look.THIN)
+        self.labels = Labels(plot, baseline="top")
+
+    def feed(self, results: Results, *, top: float) -> None:
+        """Mark the speeds of the inputs.
+
+        Parameters
+        ----------
+        results : Results
+            Whose inputs name the two speeds.
+        top : float
+            Where the words hang, in the unit of the vertical axis.
+        """
+        rows = []
+        for name, text, shade, align in _SPEEDS:
+            value = results.inputs.get(name)
+            if isinstance(value, (int, float)):
+                rows.append((float(value), top, text, look.colour(shade), align))
+        self.source.data = {"x": [row[0] for row in rows], "colour": [row[3] for row in rows]}
+        self.labels.feed(rows)
