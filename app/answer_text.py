@@ -184,7 +184,9 @@ def _figures(results: Results) -> Iterator[tuple[str, str]]:
     )
     yield (
         "Elevator in cruise, at landing with balance forward",
-        _several("deg", balance.elevator_cruise_deg, balance.elevator_landing_forward_deg),
+        _several(
+            "deg", balance.elevator_cruise_deg, balance.elevator_landing_forward_deg, places=1
+        ),
     )
     yield "Wing area", number(planform.area_m2, "m²")
     yield "Aspect ratio", number(planform.aspect_ratio)
@@ -201,12 +203,12 @@ def _landing_figures(results: Results) -> Iterator[tuple[str, str]]:
         stall += f", {number(low, places=places)} to {number(high, places=places)}"
     yield "Stall speed in trim", _trusted(stall, landing.trust)
     yield "Stall begins", _trusted(landing.onset_words or NOT_FOUND, landing.trust)
-    largest = number(landing.largest_lift_coefficient)
-    yield "Largest lift coefficient", _trusted(largest, landing.trust)
+    onset = number(landing.onset_lift_coefficient)
+    yield "Lift coefficient there", _trusted(onset, landing.trust)
     for section in results.sections:
         low, high = section.landing_reynolds
         known = math.isfinite(low) and math.isfinite(high)
-        span = f"{low:,.0f} to {high:,.0f}" if known else NOT_FOUND
+        span = f"{_rounded(low):,} to {_rounded(high):,}" if known else NOT_FOUND
         label = f"Reynolds numbers at landing, {section.role}"
         yield label, f"{span} ({section.name}, {section.origin})"
 
@@ -229,8 +231,14 @@ def _cruise_figures(results: Results) -> Iterator[tuple[str, str]]:
         yield f"  {label}", _trusted(value, cruise.trust)
 
 
-def _several(unit: str, *values: float) -> str:
-    """Show values side by side, all with the decimals of the largest."""
-    finite = [abs(value) for value in values if math.isfinite(value)]
-    places = min(decimals(max(finite)), 3) if finite else 0
+def _rounded(value: float) -> int:
+    """Round to three significant figures."""
+    return int(float(f"{value:.2e}"))
+
+
+def _several(unit: str, *values: float, places: int | None = None) -> str:
+    """Show values side by side, all with the same decimals: those of the largest."""
+    if places is None:
+        finite = [abs(value) for value in values if math.isfinite(value)]
+        places = min(decimals(max(finite)), 3) if finite else 0
     return f"{', '.join(number(value, places=places) for value in values)} {unit}"

@@ -250,6 +250,8 @@ def _open(arguments: argparse.Namespace) -> int:
 def _serve(file: str, arguments: argparse.Namespace) -> int:
     start_log(arguments.log_level)
     scenario = _scenario(file)
+    if blamed := _unusable_section(scenario.freeze(), file):
+        raise blamed
     from app.notebook import serve
 
     _pin_loaded()
@@ -315,13 +317,32 @@ def _answer(scenario: Scenario, file: str) -> Results:
     from app.scenario_error import input_refusal
     from solver.errors import InputError
 
+    inputs = scenario.freeze()
     try:
-        return analyse(scenario.freeze())
+        return analyse(inputs)
     except InputError as error:
         # The analysis may know limits that only show in combination.
-        if error.name not in FIELDS:
-            raise
-        raise UnusableError(str(input_refusal(error, file))) from error
+        if error.name in FIELDS:
+            raise UnusableError(str(input_refusal(error, file))) from error
+        if blamed := _unusable_section(inputs, file):
+            raise blamed from error
+        raise
+
+
+def _unusable_section(inputs: Inputs, file: str) -> UnusableError | None:
+    """Find a section whose tables can be read but make no outline or no polar."""
+    from app.analysis.section_stage import section_data
+    from app.scenario_error import quoted
+    from solver.errors import InputError
+
+    for source in dict.fromkeys(inputs.sections):
+        try:
+            if source.tables is not None:
+                section_data(source)
+        except InputError as error:
+            key = f"sections.{quoted(source.name)}"
+            return UnusableError(f"{file}: {key} cannot be used: {error}")
+    return None
 
 
 def _fields(_arguments: argparse.Namespace) -> int:

@@ -15,6 +15,8 @@ import pytest
 
 from app import cli, log
 from app.scenario import field_list
+from app.scenario_file import read_scenario
+from app.scenario_save import write_scenario
 from scenarios import FOLDER, example_names, example_path
 from solver.errors import InputError
 from tests.app.sample_results import make_results, with_nothing_found
@@ -118,7 +120,7 @@ def test_a_command_that_cannot_be_used_ends_with_2(arguments, capsys):
 def test_solve_asks_about_the_file_and_reports_its_verdict(analysed, capsys):
     status = cli.main(["solve", TARN_RIDGE])
     (inputs,) = analysed
-    assert (inputs.name, inputs.wing.root_section) == ("Tarn Ridge 18", "NACA 4409")
+    assert (inputs.name, inputs.wing.root_section) == ("Tarn Ridge 18", "NACA 2409")
     text = capsys.readouterr().out
     assert text.startswith("Tarn Ridge 18: ")
     failing = [one for one in make_results().margins if one.verdict == "fail"]
@@ -201,6 +203,29 @@ def test_the_log_keeps_the_level_asked_for_and_rotates(log_folder, analysed, mon
     text = "".join(path.read_text(encoding="utf-8") for path in log_folder.iterdir())
     assert "kept 99" in text
     assert "unheard" not in text
+
+
+@pytest.mark.parametrize("command", ["solve", "open"])
+@pytest.mark.parametrize(
+    ("table", "keep", "words"),
+    [
+        ("e387_outline.csv", lambda lines: lines[:-1], "coordinates must be"),
+        ("e387_model_e_lift.csv", lambda lines: lines[:6], "lift_sweeps must be"),
+    ],
+    ids=["outline without its last point", "two readings of lift"],
+)
+def test_tables_that_make_no_section_are_a_fault_of_the_file(
+    command, table, keep, words, tmp_path, capsys, served
+):
+    write_scenario(read_scenario(example_path()), tmp_path / "a.toml")
+    path = tmp_path / "measured" / table
+    lines = path.read_text(encoding="utf-8").splitlines()
+    path.write_text("\n".join(keep(lines)) + "\n", encoding="utf-8")
+    assert cli.main([command, str(tmp_path / "a.toml")]) == cli.UNUSABLE
+    (sentence,) = capsys.readouterr().err.splitlines()
+    assert "a.toml: sections.E387 cannot be used: " in sentence
+    assert words in sentence
+    assert served.asked == []
 
 
 class Served:

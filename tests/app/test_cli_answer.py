@@ -139,7 +139,7 @@ def test_text_never_shows_what_was_not_found_as_a_number():
     assert "nan" not in text.lower()
     for row in table_rows(text)[1:]:
         assert NOT_FOUND in row
-    for label in ("Stall speed in trim", "Largest lift coefficient", "  Lift over drag"):
+    for label in ("Stall speed in trim", "Lift coefficient there", "  Lift over drag"):
         (line,) = [one for one in text.splitlines() if one.startswith(f"  {label}")]
         assert line.endswith(NOT_FOUND)
 
