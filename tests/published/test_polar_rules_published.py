@@ -274,7 +274,7 @@ def test_drag_falls_and_lift_to_drag_rises_with_reynolds_number():
 
 
 def scatter_rows(quantity: str) -> list[tuple[str, float]]:
-    lines = (DATA / "measurement_scatter.csv").read_text().splitlines()
+    lines = (DATA.parent / "measurement_scatter.csv").read_text().splitlines()
     rows = csv.DictReader(line for line in lines if not line.startswith("#"))
     return [(row["Re"], float(row["value"])) for row in rows if row["quantity"] == quantity]
 
