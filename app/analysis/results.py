@@ -336,7 +336,6 @@ class LandingResult:
     stall_speed_m_s: float
     stall_speed_high_m_s: float
     onset_lift_coefficient: float
-    largest_lift_coefficient: float
     landing_ratio: float
     landing_ratio_low: float
     landing_ratio_high: float

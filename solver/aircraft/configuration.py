@@ -164,6 +164,11 @@ class Aircraft:
         return float(self.wing.mean_leading_edge) + share * self.chord
 
     @property
+    def everywhere(self) -> NDArray[np.bool_]:
+        """Mask of all stations, shape (n,)."""
+        return np.ones(self.lattice.surface.shape, dtype=np.bool_)
+
+    @property
     def on_wing(self) -> NDArray[np.bool_]:
         """Mask of the wing's stations, shape (n,)."""
         return np.asarray(self.lattice.surface == WING)

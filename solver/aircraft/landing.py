@@ -8,39 +8,28 @@ import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from solver.aircraft.configuration import WING, Aircraft
-from solver.aircraft.trim import WAKE_TOLERANCE, Load, Trimmed, trim
+from solver.aircraft.trim import Load, Trimmed, trim_at_knee
 from solver.section.packed import NOMINAL
-from solver.wing.stall import least_angle_room, stalling_range
+from solver.wing.stall import critical_share, stalling_range
 
 FloatArray = NDArray[np.float64]
 BoolArray = NDArray[np.bool_]
-
-CAREFUL_SHARE = 0.8
-"""Share of the room left that the first step up the branch takes [-]. A section turns
-by about A/(A + 2) of the wing's turn, so this stays short of every knee."""
-
-OVERSHOOT = 1.15
-"""Largest step up, over the room left, once the rate at which it shrinks is known [-]."""
-
-SEARCH_WAKE = np.radians(2.0)
-"""Angle by which the wake may lie off the stream while the onset is searched [rad];
-the last steps lay it anew."""
-
-ONSET_TOLERANCE = np.radians(0.01)
-"""Angle left to the first knee at which the onset counts as found [rad]: 0.1 % in
-stall speed."""
-
-MOST_STEPS = 30
 
 
 @dataclass(frozen=True, eq=False)
 class StallOnset:
     """Trimmed flight in which the first wing station reaches its knee; arrays (...).
 
+    The knee says where and when, the first peak how much: the stall speed belongs to
+    the lift that the same loading carries when that station has its whole largest
+    lift, a few per cent more than at the knee.
+
     Fields
     ------
     trimmed : Trimmed
-        Its speed is the stall speed.
+        At the knee.
+    share : ndarray
+        Lift of that station over its largest [-], about 0.98.
     found : ndarray of bool
         Where the onset was met on a converged branch.
     start, end : ndarray
@@ -48,6 +37,7 @@ class StallOnset:
     """
 
     trimmed: Trimmed
+    share: FloatArray
     found: BoolArray
     start: FloatArray
     end: FloatArray
@@ -64,19 +54,26 @@ class StallOnset:
         StallOnset
         """
         return StallOnset(
-            self.trimmed.case(index), self.found[index], self.start[index], self.end[index]
+            trimmed=self.trimmed.case(index),
+            share=self.share[index],
+            found=self.found[index],
+            start=self.start[index],
+            end=self.end[index],
         )
 
     @property
     def speed(self) -> FloatArray:
         """Stall speed [m/s]."""
-        return self.trimmed.speed
+        return np.asarray(self.trimmed.speed * np.sqrt(self.share))
+
+    @property
+    def lift_area(self) -> FloatArray:
+        """Lift over dynamic pressure at the stall speed [m2]."""
+        return np.asarray(self.trimmed.lift_area / self.share)
 
 
-def stall_onset(
-    aircraft: Aircraft, load: Load, *, band: ArrayLike = NOMINAL, start: Trimmed | None = None
-) -> StallOnset:
-    """Follow trimmed flight to higher angles until the first station stalls.
+def stall_onset(aircraft: Aircraft, load: Load, *, band: ArrayLike = NOMINAL) -> StallOnset:
+    """Find the trimmed flight in which the first station stalls.
 
     Parameters
     ----------
@@ -84,8 +81,6 @@ def stall_onset(
     load : Load
     band : array_like of int, shape (...)
         Ends of the polars' confidence band.
-    start : Trimmed, optional
-        Unstalled flight of the same load and shape to begin from.
 
     Returns
     -------
@@ -93,122 +88,19 @@ def stall_onset(
 
     Notes
     -----
-    At each angle the elevator balances the moment and the speed is the one at
-    which the lift carries the load, so that Reynolds numbers, and with them the
-    sections' largest lift, belong to the stall speed itself. Steps up the branch
-    stay short of the knee, or go by the rate at which the room shrinks; once the
-    onset is bracketed it is closed in by false position (Illinois form). Below the
-    first knee the solution is the only one, so the path does not matter; nothing
-    here goes further past it than a share of a step.
+    The elevator balances the moment and the speed is the one at which the lift
+    carries the load, so that Reynolds numbers, and with them the sections' largest
+    lift, belong to the stall speed itself.
     """
-    bands = np.asarray(band)
-    current = start if start is not None else _unstalled(aircraft, load, bands)
-    found, lost = np.zeros(bands.shape, dtype=np.bool_), np.zeros(bands.shape, dtype=np.bool_)
-    for wake_tolerance in (SEARCH_WAKE, WAKE_TOLERANCE):
-        current = trim(
-            aircraft,
-            load,
-            angle=current.angle,
-            band=bands,
-            start=current,
-            wake_tolerance=wake_tolerance,
-        )
-        gap = least_angle_room(current.state, surface=WING)
-        bracket = _Bracket.one_end(current.angle, gap)
-        found = current.converged & (np.abs(gap) < ONSET_TOLERANCE)
-        lost = lost | ~current.converged
-        for _ in range(MOST_STEPS):
-            if np.all(found | lost):
-                break
-            angle = np.where(found | lost, current.angle, bracket.next_angle())
-            current = trim(
-                aircraft,
-                load,
-                angle=angle,
-                band=bands,
-                start=current,
-                wake_tolerance=wake_tolerance,
-            )
-            gap = least_angle_room(current.state, surface=WING)
-            lost = lost | (~current.converged & ~found)
-            found = found | (current.converged & (np.abs(gap) < ONSET_TOLERANCE))
-            bracket = bracket.narrowed(angle, gap)
-    low, high = stalling_range(current.state, surface=WING)
-    return StallOnset(trimmed=current, found=found & ~lost, start=low, end=high)
-
-
-@dataclass(frozen=True, eq=False)
-class _Bracket:
-    """What is known of the room left over angle: the last two angles and a bracket.
-
-    Fields
-    ------
-    low, low_gap, high, high_gap : ndarray
-        Ends with room left and with none; NaN where not yet known [rad].
-    last, last_gap, before, before_gap : ndarray
-        The last angle tried and the one before [rad].
-    """
-
-    low: FloatArray
-    low_gap: FloatArray
-    high: FloatArray
-    high_gap: FloatArray
-    last: FloatArray
-    last_gap: FloatArray
-    before: FloatArray
-    before_gap: FloatArray
-
-    @classmethod
-    def one_end(cls, angle: FloatArray, gap: FloatArray) -> _Bracket:
-        """Only one angle has been tried."""
-        none = np.full_like(angle, np.nan)
-        below = gap >= 0.0
-        return cls(
-            np.where(below, angle, none),
-            np.where(below, gap, none),
-            np.where(below, none, angle),
-            np.where(below, none, gap),
-            angle,
-            gap,
-            none,
-            none,
-        )
-
-    def next_angle(self) -> FloatArray:
-        """Between the ends where both are known, else on by secant or a careful step."""
-        with np.errstate(invalid="ignore", divide="ignore"):
-            between = self.low + (self.high - self.low) * self.low_gap / (
-                self.low_gap - self.high_gap
-            )
-            secant = -self.last_gap * (self.last - self.before) / (self.last_gap - self.before_gap)
-        careful = CAREFUL_SHARE * self.last_gap
-        sane = np.isfinite(secant) & (secant * self.last_gap > 0.0)
-        bound = OVERSHOOT * np.abs(self.last_gap) + ONSET_TOLERANCE
-        onward = self.last + np.where(sane, np.clip(secant, -bound, bound), careful)
-        return np.where(np.isfinite(between), between, onward)
-
-    def narrowed(self, angle: FloatArray, gap: FloatArray) -> _Bracket:
-        """Replace one end; an end kept twice running counts half (Illinois)."""
-        past = gap < 0.0
-        twice = past == (self.last_gap < 0.0)
-        keep = np.where(twice, 0.5, 1.0)
-        return _Bracket(
-            low=np.where(past, self.low, angle),
-            low_gap=np.where(past, keep * self.low_gap, gap),
-            high=np.where(past, angle, self.high),
-            high_gap=np.where(past, gap, keep * self.high_gap),
-            last=angle,
-            last_gap=gap,
-            before=self.last,
-            before_gap=self.last_gap,
-        )
-
-
-def _unstalled(aircraft: Aircraft, load: Load, band: NDArray[np.int64]) -> Trimmed:
-    """Trimmed flight at a lift coefficient far from any stall."""
-    lift_coefficient = 0.5
-    speed = np.sqrt(2.0 * load.force / (load.density * aircraft.area * lift_coefficient))
-    return trim(aircraft, load, speed=np.full(band.shape, speed), band=band)
+    flight = trim_at_knee(aircraft, load, band=band)
+    low, high = stalling_range(flight.state, surface=WING)
+    return StallOnset(
+        trimmed=flight,
+        share=critical_share(flight.state, surface=WING),
+        found=flight.converged,
+        start=low,
+        end=high,
+    )
 
 
 @dataclass(frozen=True)

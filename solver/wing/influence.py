@@ -130,8 +130,9 @@ def influence(
     upwash = upwash + sweep_upwash(lattice)
 
     segment = lattice.segment
-    lx, ly, lz = _straightened(
-        segment[..., 0, None], segment[..., 1, None], segment[..., 2, None], lattice, stream
+    ly = segment[..., 1, None]
+    lx, lz = _straightened(
+        segment[..., 0, None], segment[..., 2, None], lattice, stream, mirrored=False
     )
     lift_share = normal[..., 2]
     return Influence(
@@ -147,12 +148,19 @@ def influence(
 def _mirrored_velocity(
     lattice: Lattice, stream: FloatArray, core_fraction: float
 ) -> tuple[FloatArray, FloatArray, FloatArray]:
-    """Velocity at each control point from each horseshoe and its mirror image."""
-    core = core_radius(lattice, core_fraction)
-    right = _horseshoes(lattice, lattice.point, stream, core, own=True)
-    mirrored = lattice.point * np.array([1.0, -1.0, 1.0])
-    left = _horseshoes(lattice, mirrored, stream, core, own=False)
-    return right[0] + left[0], right[1] - left[1], right[2] + left[2]
+    """Velocity at each control point from each horseshoe and its mirror image.
+
+    The image's velocity at a point is the mirror image of what the right half's
+    horseshoe does at the mirrored point, so both are evaluated at once.
+    """
+    count = lattice.surface.size
+    vx, vy, vz = _horseshoes(lattice, stream, core_radius(lattice, core_fraction))
+    right, left = slice(0, count), slice(count, 2 * count)
+    return (
+        vx[..., right, :] + vx[..., left, :],
+        vy[..., right, :] - vy[..., left, :],
+        vz[..., right, :] + vz[..., left, :],
+    )
 
 
 def core_radius(lattice: Lattice, core_fraction: float) -> FloatArray:
@@ -178,61 +186,69 @@ def core_radius(lattice: Lattice, core_fraction: float) -> FloatArray:
 
 
 def _horseshoes(
-    lattice: Lattice, point: FloatArray, stream: FloatArray, core: FloatArray, *, own: bool
+    lattice: Lattice, stream: FloatArray, core: FloatArray
 ) -> tuple[FloatArray, FloatArray, FloatArray]:
-    """Components of the velocity at `point` from the right half's horseshoes."""
-    a = _displacement(point, lattice.inner, lattice, stream)
-    b = _displacement(point, lattice.outer, lattice, stream)
-    length_a = np.sqrt(a[0] ** 2 + a[1] ** 2 + a[2] ** 2)
-    length_b = np.sqrt(b[0] ** 2 + b[1] ** 2 + b[2] ** 2)
-    leg_a = _leg(a, length_a, stream, core)
-    leg_b = _leg(b, length_b, stream, core)
+    """Velocity at control points and, behind them, at their mirror images.
 
-    dot = a[0] * b[0] + a[1] * b[1] + a[2] * b[2]
-    product = length_a * length_b
-    denominator = product * (product + dot)
-    if own:
-        diagonal = np.arange(point.shape[-2])
-        denominator[..., diagonal, diagonal] = np.inf
-    bound = (length_a + length_b) / denominator
-    cross = (
-        a[1] * b[2] - a[2] * b[1],
-        a[2] * b[0] - a[0] * b[2],
-        a[0] * b[1] - a[1] * b[0],
-    )
+    Each component has shape (..., 2 n, n); both ends of every segment are worked on
+    together along an axis in front of the points.
+    """
+    dx, dy, dz = _displacements(lattice, stream)
+    length = np.sqrt(dx**2 + dy**2 + dz**2)
+    core = np.concatenate([core, core], axis=-2)[..., None, :, :]
+    legs = _legs(dx, dy, dz, length, stream, core)
+
+    ax, ay, az = dx[..., 0, :, :], dy[..., 0, :, :], dz[..., 0, :, :]
+    bx, by, bz = dx[..., 1, :, :], dy[..., 1, :, :], dz[..., 1, :, :]
+    product = length[..., 0, :, :] * length[..., 1, :, :]
+    denominator = product * (product + ax * bx + ay * by + az * bz)
+    diagonal = np.arange(lattice.surface.size)
+    denominator[..., diagonal, diagonal] = np.inf
+    bound = (length[..., 0, :, :] + length[..., 1, :, :]) / denominator
+    cross = (ay * bz - az * by, az * bx - ax * bz, ax * by - ay * bx)
     scale = 0.25 / np.pi
-    vx, vy, vz = (scale * (leg_b[k] - leg_a[k] + bound * cross[k]) for k in range(3))
+    vx, vy, vz = (
+        scale * (leg[..., 1, :, :] - leg[..., 0, :, :] + bound * turned)
+        for leg, turned in zip(legs, cross, strict=True)
+    )
     return vx, vy, vz
 
 
-def _displacement(
-    point: FloatArray, end: FloatArray, lattice: Lattice, stream: FloatArray
+def _displacements(
+    lattice: Lattice, stream: FloatArray
 ) -> tuple[FloatArray, FloatArray, FloatArray]:
-    """Vector from segment ends to points, each surface's own line straightened."""
-    dx, dy, dz = (point[..., :, None, k] - end[..., None, :, k] for k in range(3))
-    return _straightened(dx, dy, dz, lattice, stream)
+    """Vectors from both ends of every segment to every point and its mirror image."""
+    point = np.concatenate([lattice.point, lattice.point * np.array([1.0, -1.0, 1.0])], axis=-2)
+    ends = np.stack([lattice.inner, lattice.outer], axis=-3)
+    dx, dy, dz = (point[..., None, :, None, k] - ends[..., None, :, k] for k in range(3))
+    dx, dz = _straightened(dx, dz, lattice, stream[..., None, :], mirrored=True)
+    return np.broadcast_to(dx, np.broadcast_shapes(dx.shape, dy.shape)), dy, dz
 
 
 def _straightened(
-    dx: FloatArray, dy: FloatArray, dz: FloatArray, lattice: Lattice, stream: FloatArray
-) -> tuple[FloatArray, FloatArray, FloatArray]:
+    dx: FloatArray, dz: FloatArray, lattice: Lattice, stream: FloatArray, *, mirrored: bool
+) -> tuple[FloatArray, FloatArray]:
     """Take off the part along the stream where both stations share a surface."""
     own = lattice.surface[:, None] == lattice.surface[None, :]
+    own = np.concatenate([own, own]) if mirrored else own
     ux, uz = stream[..., 0][..., None, None], stream[..., 2][..., None, None]
     along = (dx * ux + dz * uz) * own
-    return dx - along * ux, dy, dz - along * uz
+    return dx - along * ux, dz - along * uz
 
 
-def _leg(
-    r: tuple[FloatArray, FloatArray, FloatArray],
+def _legs(
+    dx: FloatArray,
+    dy: FloatArray,
+    dz: FloatArray,
     length: FloatArray,
     stream: FloatArray,
     core: FloatArray,
 ) -> tuple[FloatArray, FloatArray, FloatArray]:
-    """Velocity, times 4 pi, of a leg that trails along the stream from its head."""
-    ux, uz = stream[..., 0][..., None, None], stream[..., 2][..., None, None]
-    cross = (-uz * r[1], uz * r[0] - ux * r[2], ux * r[1])
-    distance_squared = cross[0] ** 2 + cross[1] ** 2 + cross[2] ** 2
+    """Velocities, times 4 pi, of legs that trail along the stream from their heads."""
+    ux = stream[..., 0][..., None, None, None]
+    uz = stream[..., 2][..., None, None, None]
+    cross_x, cross_y, cross_z = -uz * dy, uz * dx - ux * dz, ux * dy
+    distance_squared = cross_x**2 + cross_y**2 + cross_z**2
     spread = np.sqrt(distance_squared**2 + core**4)
-    factor = (length + ux * r[0] + uz * r[2]) / (length * spread)
-    return factor * cross[0], factor * cross[1], factor * cross[2]
+    factor = (length + ux * dx + uz * dz) / (length * spread)
+    return factor * cross_x, factor * cross_y, factor * cross_z

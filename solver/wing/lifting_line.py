@@ -200,6 +200,8 @@ class Linearised:
 
     Fields
     ------
+    angle : ndarray, shape (..., n)
+        At which each section works [rad].
     values : SectionValues
         Section coefficients, shape (..., n).
     residual : ndarray, shape (..., n)
@@ -212,6 +214,7 @@ class Linearised:
         Derivative with each station's own shift [m].
     """
 
+    angle: FloatArray
     values: SectionValues
     residual: FloatArray
     jacobian: FloatArray
@@ -251,6 +254,7 @@ def linearise(flow: Flow, circulation: FloatArray, angle_of_attack: FloatArray) 
     diagonal = np.arange(circulation.shape[-1])
     jacobian[..., diagonal, diagonal] += 1.0
     return Linearised(
+        angle=angle,
         values=values,
         residual=residual,
         jacobian=jacobian,

@@ -87,6 +87,27 @@ def least_angle_room(state: Loading, *, surface: int = 0) -> FloatArray:
     return np.asarray(np.min(room(state).angle[..., on_surface], axis=-1))
 
 
+def critical_share(state: Loading, *, surface: int = 0) -> FloatArray:
+    """Lift over its largest, at the station with the least angle left to its knee.
+
+    Parameters
+    ----------
+    state : Loading
+    surface : int
+        Index of the surface.
+
+    Returns
+    -------
+    ndarray, shape (...)
+        [-]; about 0.98 at the onset of stall.
+    """
+    left = room(state)
+    on_surface = state.flow.lattice.surface == surface
+    first = np.argmin(np.where(on_surface, left.angle, np.inf), axis=-1)[..., None]
+    share = np.broadcast_to(state.lift / left.limit, left.angle.shape)
+    return np.asarray(np.take_along_axis(share, first, axis=-1)[..., 0])
+
+
 def stalling_range(state: Loading, *, surface: int = 0) -> tuple[FloatArray, FloatArray]:
     """Part of the half-span that stalls with the first station.
 

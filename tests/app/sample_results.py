@@ -201,7 +201,6 @@ def _landing(
         stall_speed_m_s=stall,
         stall_speed_high_m_s=0.97 * stall,
         onset_lift_coefficient=1.14,
-        largest_lift_coefficient=1.18,
         landing_ratio=ratio,
         landing_ratio_low=0.95 * ratio,
         landing_ratio_high=1.05 * ratio,

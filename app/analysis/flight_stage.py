@@ -1,0 +1,245 @@
+"""Trimmed flight: one speed, many speeds, and along the span."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, replace
+
+import numpy as np
+from numpy.typing import NDArray
+
+from app.analysis.results import (
+    DragParts,
+    LiftCurveResult,
+    SpanResult,
+    SweepResult,
+    TrimResult,
+    Trust,
+)
+from solver.aircraft.configuration import WING, Aircraft
+from solver.aircraft.landing import StallOnset
+from solver.aircraft.speed import Drive, LevelFlight, electric_power, endurance, level_flight
+from solver.aircraft.stability import Stability
+from solver.aircraft.trim import Load, Trimmed
+from solver.section.packed import HIGH, LOW, NOMINAL
+from solver.wing.forces import station_forces
+from solver.wing.influence import influence
+from solver.wing.lifting_line import Flow, Loading
+from solver.wing.stall import Room, follow, least_angle_room, room, stalling_range
+
+FloatArray = NDArray[np.float64]
+TrustArray = NDArray[np.uint8]
+
+SWEEP_SPEEDS = 24
+CURVE_FROM, CURVE_TO, CURVE_STEP = np.radians(-4.0), np.radians(20.0), np.radians(1.0)
+
+
+@dataclass(frozen=True, eq=False)
+class Cruise:
+    """Cruise for the band of drag (low, nominal and high lift), and its stability."""
+
+    flights: LevelFlight
+    stability: Stability
+    power: tuple[float, float, float]
+    drive: Drive
+
+    @property
+    def flight(self) -> LevelFlight:
+        """The nominal one."""
+        return self.flights.case(NOMINAL)
+
+
+def span_result(condition: str, state: Loading, aircraft: Aircraft) -> SpanResult:
+    """One single flight along the half-wing, root to tip."""
+    on_wing = aircraft.on_wing
+    left: Room = room(state)
+    low, high = room(state, band=LOW), room(state, band=HIGH)
+    mean_chord = float(aircraft.wing.mean_chord)
+    trust = station_trust(state)
+
+    def of_wing(values: FloatArray) -> FloatArray:
+        return np.array(values[..., on_wing])
+
+    return SpanResult(
+        condition=condition,
+        y_m=of_wing(state.flow.lattice.point[:, 1]),
+        chord_m=of_wing(state.flow.lattice.chord),
+        reynolds=of_wing(state.flow.reynolds()),
+        angle_deg=np.degrees(of_wing(state.section_angle)),
+        lift=of_wing(state.lift),
+        drag=of_wing(state.drag),
+        loading=of_wing(state.lift * state.flow.lattice.chord / mean_chord),
+        limit_low=of_wing(low.limit),
+        limit=of_wing(left.limit),
+        limit_high=of_wing(high.limit),
+        room=of_wing(left.lift),
+        knee_room_deg=np.degrees(of_wing(left.angle)),
+        trust=trust[on_wing],
+    )
+
+
+def station_trust(state: Loading) -> TrustArray:
+    """Trust code of every station; not converged outweighs all."""
+    flow = state.flow
+    codes = flow.polars.trust(state.section_angle, flow.reynolds())
+    lost = ~np.asarray(state.converged)[..., None]
+    return np.where(lost, np.uint8(Trust.NOT_CONVERGED), codes).astype(np.uint8)
+
+
+def flight_trust(state: Loading) -> TrustArray:
+    """Worst trust code of the wing's stations, shape of the batch."""
+    on_wing = state.flow.lattice.surface == WING
+    return np.asarray(station_trust(state)[..., on_wing].max(axis=-1))
+
+
+TRUST_WORDS = {
+    Trust.VALID: "inside the sections' data",
+    Trust.EXTRAPOLATED: "some stations lie outside the Reynolds numbers or angles of their data",
+    Trust.INDICATIVE: "some stations are past their stall: indicative only",
+    Trust.NOT_CONVERGED: "no balanced flight was found at this speed",
+}
+
+
+def trim_result(
+    condition: str, flight: LevelFlight, aircraft: Aircraft, drive: Drive
+) -> TrimResult:
+    """One single trimmed flight in the units of the screen."""
+    trimmed = flight.trimmed
+    drag = flight.drag
+    speed = float(trimmed.speed)
+    trust = Trust(int(flight_trust(trimmed.state)))
+    return TrimResult(
+        condition=condition,
+        speed_m_s=speed,
+        angle_deg=float(np.degrees(trimmed.angle)),
+        elevator_deg=float(np.degrees(trimmed.elevator)),
+        lift_coefficient=float(trimmed.lift_area) / aircraft.area,
+        tail_lift_n=float(trimmed.tail_lift),
+        drag=DragParts(
+            induced=float(flight.induced),
+            profile=float(flight.profile),
+            body=float(flight.body),
+            trim_induced=float(flight.trim_induced),
+            trim_profile=float(flight.trim_profile),
+        ),
+        lift_to_drag=trimmed.load.force / float(drag),
+        electric_power_w=float(electric_power(drive, drag=drag, speed=np.asarray(speed))),
+        trust=trust,
+        status=TRUST_WORDS[trust],
+        span=span_result(condition, trimmed.state, aircraft),
+    )
+
+
+def sweep_result(
+    aircraft: Aircraft,
+    load: Load,
+    drive: Drive,
+    *,
+    lowest_speed: float,
+    highest_speed: float,
+    headwind: float,
+) -> SweepResult:
+    """Level flight over speed.
+
+    Parameters
+    ----------
+    aircraft : Aircraft
+    load : Load
+    drive : Drive
+    lowest_speed, highest_speed : float
+        [m/s]
+    headwind : float
+        Taken off the speed over ground for the range [m/s].
+    """
+    speed = np.linspace(lowest_speed, highest_speed, SWEEP_SPEEDS)
+    flight = level_flight(aircraft, load, speed=speed)
+    trust = flight_trust(flight.trimmed.state)
+    trust = np.where(flight.converged, trust, Trust.NOT_CONVERGED).astype(np.uint8)
+    power = electric_power(drive, drag=flight.drag, speed=speed)
+    time = endurance(drive, power=power)
+    distance = np.maximum(speed - headwind, 0.0) * time
+    usable = trust < Trust.INDICATIVE
+    return SweepResult(
+        speed_m_s=speed,
+        induced=flight.induced,
+        profile=flight.profile,
+        body=np.asarray(flight.body),
+        trim=flight.trim_induced + flight.trim_profile,
+        total=flight.drag,
+        electric_power_w=power,
+        lift_to_drag=load.force / flight.drag,
+        elevator_deg=np.degrees(flight.trimmed.elevator),
+        endurance_h=time / 3600.0,
+        range_km=1e-3 * distance,
+        trust=trust,
+        best_endurance_speed_m_s=_best(speed, time, usable),
+        best_range_speed_m_s=_best(speed, distance, usable),
+    )
+
+
+def _best(speed: FloatArray, value: FloatArray, usable: NDArray[np.bool_]) -> float:
+    """Speed of the largest usable value, by the parabola through its neighbours."""
+    if not usable.any():
+        return float("nan")
+    index = int(np.argmax(np.where(usable, value, -np.inf)))
+    inside = 0 < index < speed.size - 1 and bool(usable[index - 1] and usable[index + 1])
+    if not inside:
+        return float(speed[index])
+    left, middle, right = value[index - 1 : index + 2]
+    curvature = left - 2.0 * middle + right
+    shift = 0.5 * (left - right) / curvature if curvature < 0.0 else 0.0
+    return float(speed[index] + shift * (speed[1] - speed[0]))
+
+
+def lift_curve_result(aircraft: Aircraft, flight: Trimmed, *, onset: StallOnset) -> LiftCurveResult:
+    """Lift of wing and tail over angle at one speed, elevator held where it trims.
+
+    Parameters
+    ----------
+    aircraft : Aircraft
+    flight : Trimmed
+        A single flight, whose speed and elevator are held.
+    onset : StallOnset
+        The same aircraft where its first station stalls.
+    """
+    angles = np.arange(CURVE_FROM, CURVE_TO + 0.5 * CURVE_STEP, CURVE_STEP)
+    field = influence(aircraft.lattice, wake_angle=angles)
+    base = flight.state.flow
+
+    def flow_at(angle: float) -> Flow:
+        index = int(np.argmin(np.abs(angles - angle)))
+        return replace(base, influence=field.case(index), band=NOMINAL)
+
+    branch = follow(flow_at, angles)
+    lift = np.array([_lift_coefficient(state, aircraft) for state in branch.states])
+    ranges = [stalling_range(state) for state in branch.states]
+    started = np.maximum.accumulate([float(least_angle_room(s)) < 0.0 for s in branch.states])
+    trust = np.array([int(flight_trust(state)) for state in branch.states])
+    trust = np.where(started & (trust < Trust.INDICATIVE), Trust.INDICATIVE, trust)
+    return LiftCurveResult(
+        angle_deg=np.degrees(angles),
+        lift_coefficient=lift,
+        trust=trust.astype(np.uint8),
+        stalled_from=np.array([float(low) for low, _ in ranges]),
+        stalled_to=np.array([float(high) for _, high in ranges]),
+        onset_angle_deg=float(np.degrees(onset.trimmed.angle)),
+        onset_lift_coefficient=float(onset.trimmed.lift_area) / aircraft.area,
+        largest_lift_coefficient=_first_peak(lift, branch.converged),
+    )
+
+
+def _lift_coefficient(state: Loading, aircraft: Aircraft) -> float:
+    flow = state.flow
+    forces = station_forces(
+        flow.lattice,
+        flow.influence,
+        circulation=state.circulation,
+        angle_of_attack=state.angle_of_attack,
+    )
+    return float(np.sum(forces.lift)) / aircraft.area
+
+
+def _first_peak(lift: FloatArray, converged: NDArray[np.bool_]) -> float:
+    """First local maximum of the converged branch; its last value where it still rises."""
+    values = lift[converged]
+    falls = np.flatnonzero(np.diff(values) < 0.0)
+    return float(values[falls[0]] if falls.size else values[-1])

@@ -1,0 +1,1 @@
+"""Speed of the solver and the page: ``python -m tests.benchmark``."""
