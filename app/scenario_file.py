@@ -25,13 +25,8 @@ from app.scenario_error import (
     shown,
     unknown,
 )
-from app.tables import (
-    TableError,
-    read_drag_table,
-    read_lift_table,
-    read_outline_table,
-    table_source,
-)
+from app.table_text import TableError
+from app.tables import read_drag_table, read_lift_table, read_outline_table, table_source
 from solver.errors import InputError
 
 __all__ = ["ScenarioError", "read_scenario", "scenario_from_text"]
