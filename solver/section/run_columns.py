@@ -263,39 +263,43 @@ def _insert_between(grid: FloatArray, columns: list[LiftColumn], reynolds: float
     pair = np.array([low.limit.largest_lift, high.limit.largest_lift])
     if lift_jumps(np.array([low.reynolds, high.reynolds]), pair):
         return
+    if np.any(_attached(grid, low) & _attached(grid, high)):
+        columns.insert(above, _between(grid, low, high, reynolds))
+
+
+def _attached(grid: FloatArray, column: LiftColumn) -> BoolArray:
+    return column.covered & (grid <= column.limit.peak_angle + 1e-9)
+
+
+def _between(grid: FloatArray, low: LiftColumn, high: LiftColumn, reynolds: float) -> LiftColumn:
+    """Lift and moment linear in log Reynolds number between two columns."""
     share = math.log(reynolds / low.reynolds) / math.log(high.reynolds / low.reynolds)
 
-    def mixed(name: str) -> FloatArray:
-        return np.asarray((1.0 - share) * getattr(low, name) + share * getattr(high, name))
+    def mixed(first: object, second: object, name: str) -> FloatArray:
+        return np.asarray((1.0 - share) * getattr(first, name) + share * getattr(second, name))
 
-    nothing = np.zeros_like(low.covered)
+    lift, covered = mixed(low, high, "lift"), low.covered & high.covered
     nearest = low if share < 0.5 else high
-    lift, covered = mixed("lift"), low.covered & high.covered
-    peak, knee = (
-        (1.0 - share) * getattr(low.limit, name) + share * getattr(high.limit, name)
-        for name in ("peak_angle", "knee_angle")
-    )
+    peak = float(mixed(low.limit, high.limit, "peak_angle"))
     attached = covered & (grid <= peak + 1e-9)
     limit = replace(
         nearest.limit,
         largest_lift=float(np.max(lift[attached])),
         peak_angle=float(grid[attached][np.argmax(lift[attached])]),
-        knee_angle=knee,
+        knee_angle=float(mixed(low.limit, high.limit, "knee_angle")),
     )
-    columns.insert(
-        above,
-        replace(
-            nearest,
-            reynolds=reynolds,
-            lift=lift,
-            moment=mixed("moment"),
-            lift_measured=nothing,
-            moment_measured=nothing,
-            covered=covered,
-            limit=limit,
-            beyond_stall=past_stall(grid[covered], lift[covered], limit, at=grid),
-            zero_lift_angle=zero_lift(grid, lift, peak_angle=limit.peak_angle),
-        ),
+    nothing = np.zeros_like(covered)
+    return replace(
+        nearest,
+        reynolds=reynolds,
+        lift=lift,
+        moment=mixed(low, high, "moment"),
+        lift_measured=nothing,
+        moment_measured=nothing,
+        covered=covered,
+        limit=limit,
+        beyond_stall=past_stall(grid[covered], lift[covered], limit, at=grid),
+        zero_lift_angle=zero_lift(grid, lift, peak_angle=limit.peak_angle),
     )
 
 

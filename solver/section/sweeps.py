@@ -84,7 +84,7 @@ class Sweep:
             if array.ndim != 1 or array.size < 2 or array.shape != np.shape(self.angle):
                 raise InputError(name, array.shape, "two or more readings, one for each angle")
             if not np.isfinite(array).all():
-                raise InputError(name, given, "finite")
+                raise InputError(name, "a value that is not", "finite")
             array.setflags(write=False)
             object.__setattr__(self, name, array)
 
@@ -162,9 +162,9 @@ def first_attached_peak(
     """
     a, cl = np.asarray(angle, dtype=np.float64), np.asarray(lift, dtype=np.float64)
     if a.ndim != 1 or a.size < 3 or a.shape != cl.shape or not np.all(np.diff(a) > 0.0):
-        raise InputError("angle", angle, "three or more, ascending, one for each lift")
+        raise InputError("angle", f"{a.size} angles", "three or more, ascending, one for each lift")
     if not np.max(cl) > 0.0:
-        raise InputError("lift", lift, "positive somewhere")
+        raise InputError("lift", float(np.max(cl)), "positive somewhere")
     allowed = 2.0 * scatter
     start = int(np.argmax(cl >= LOW_SHARE * np.max(cl)))
     peak, fallen = _peak_before_fall(cl, start, allowed)

@@ -10,7 +10,7 @@ import pytest
 from solver.errors import InputError
 from solver.section.confidence import lift_jumps
 from solver.section.hermite import monotone_curve, node_slopes
-from solver.section.packed import pack_polars
+from solver.section.packed import HIGH, LOW, NOMINAL, pack_polars
 from solver.section.polar import CellOrigin, polar_from_sweeps
 from solver.section.run_curve import merge_drag, merge_lift, smooth_readings
 from solver.section.stalled_flow import beyond, plate_drag, plate_lift, plate_moment
@@ -240,3 +240,35 @@ def test_a_polar_refuses_tables_of_another_shape():
     with pytest.raises(InputError) as caught:
         dataclasses.replace(table, lift=np.full_like(table.lift, np.nan))
     assert caught.value.name == "lift"
+
+
+def random_run(rng: np.random.Generator, *, drag: bool) -> Sweep:
+    """Readings as bad as a file may hold them: sparse, noisy, far from any stall."""
+    n = int(rng.integers(3, 40))
+    low, high = -rng.choice([5.0, 10.0, 180.0]), rng.choice([5.0, 15.0, 25.0, 180.0])
+    angle = np.radians(np.sort(rng.uniform(low, high, n)))
+    lift = rng.choice([0.1, 6.0]) * np.sin(angle + 0.05) + rng.normal(0.0, 0.02, n)
+    lift[-1] = 0.2
+    return Sweep(
+        float(rng.choice([1e3, 3e4, 1e5, 1.02e5, 2e5, 5e6])),
+        angle,
+        lift,
+        np.exp(rng.normal(-4.0, rng.choice([0.1, 1.0]), n)) if drag else None,
+        None,
+        drag or bool(rng.random() > 0.3),
+    )
+
+
+@pytest.mark.parametrize("seed", range(30))
+def test_whatever_the_readings_values_are_finite_and_drag_is_positive(seed):
+    rng = np.random.default_rng(seed)
+    runs = [random_run(rng, drag=False) for _ in range(rng.integers(1, 5))]
+    drag_runs = [random_run(rng, drag=True) for _ in range(rng.integers(1, 4))]
+    thin = THIN if seed % 3 else ThinAirfoil(0.0, 0.0, 0.0, 0.0)
+    packed = pack_polars([polar_from_sweeps("s", runs, drag_runs, thin=thin)])
+    angle, reynolds = np.linspace(-1.0, 1.0, 400)[:, None, None], np.geomspace(1e3, 1e7, 9)
+    values = packed.evaluate(angle, reynolds[:, None], band=[LOW, NOMINAL, HIGH])
+    for name in values.__dataclass_fields__:
+        assert np.isfinite(getattr(values, name)).all()
+    assert np.all(values.drag > 0.0)
+    assert np.isfinite(packed.limits(reynolds).knee_angle).all()
