@@ -102,6 +102,8 @@ class Station:
             name: [column[near]] for name, column in self.table.data.items()
         }
         self.marker.data = {"held": [int(held)], **row}
+        # While changes are held back for one message, Bokeh calls nobody.
+        self._pointed("data", None, None)
 
     def _pointed(self, attr: str, old: object, new: object) -> None:
         if self._on_point is not None:

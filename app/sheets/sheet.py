@@ -139,6 +139,8 @@ class Sheet:
             The card.
         """
         self.plots.append(plot)
+        # Two sheets may show the same kind of figure.
+        plot.model.name = f"{self.name}: {plot.model.name}"
         # On the figure itself: the pane does not hand its own classes on.
         plot.model.css_classes = ["halfspan-card", f"halfspan-{shape}"]
         plot.model.stylesheets = [static_text("layout.css")]

@@ -35,6 +35,9 @@ function icon(name) {
   return drawn("svg", {viewBox: "0 0 16 16", width: 14, height: 14, "aria-hidden": "true"}, ...paths)
 }
 
+// Counts the messages of all senders, so that no answer is taken for another's.
+let messages = 0
+
 const QUIET = 25, BUSY_AFTER = 150, LOST_AFTER = 10000
 
 function tell(state) {
@@ -48,7 +51,6 @@ class Sender {
     this.model = model
     this.landed = landed
     this.flying = 0
-    this.count = 0
     this.last = 0
     this.timer = 0
     this.waiting = null
@@ -76,7 +78,8 @@ class Sender {
     }
     const message = this.waiting
     this.waiting = null
-    this.flying = ++this.count
+    this.flying = ++messages
+    window.halfspanFlying = (window.halfspanFlying ?? 0) + 1
     this.last = performance.now()
     this.busy = setTimeout(() => tell("solving"), BUSY_AFTER)
     this.lost = setTimeout(() => tell("lost"), LOST_AFTER)
@@ -88,6 +91,7 @@ class Sender {
     clearTimeout(this.busy)
     clearTimeout(this.lost)
     this.flying = 0
+    window.halfspanFlying -= 1
     tell("ready")
     this.landed()
     this.pump()
