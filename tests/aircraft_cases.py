@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import numpy as np
+from scipy.optimize import brentq
 
 from solver.aircraft.configuration import Aircraft, Body, Elevator, assemble
 from solver.aircraft.trim import Load
@@ -10,6 +11,8 @@ from solver.section.packed import SectionLimits, SectionValues
 from solver.wing.planform import TaperedSurface, surface_from_area
 
 DENSITY, VISCOSITY = 1.2, 1.5e-5
+# Where the lift of AnalyticSections is 98 % of its peak, over the angle of the peak.
+KNEE = float(brentq(lambda x: x * np.exp((1.0 - x**6) / 6.0) - 0.98, 0.5, 1.0))
 MASS_FORCE = 40.0
 
 
@@ -56,7 +59,7 @@ class AnalyticSections:
         stall = self._stall(reynolds, band) + 0.0 * self.zero[section]
         return SectionLimits(
             largest_lift=self.slope * stall * np.exp(-1.0 / 6.0),
-            knee_angle=self.zero[section] + 0.9 * stall,
+            knee_angle=self.zero[section] + KNEE * stall,
             peak_angle=self.zero[section] + stall,
         )
 

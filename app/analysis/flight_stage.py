@@ -150,7 +150,8 @@ def sweep_result(
     headwind : float
         Taken off the speed over ground for the range [m/s].
     """
-    speed = np.linspace(lowest_speed, highest_speed, SWEEP_SPEEDS)
+    # Even in 1/V: close together near the stall, where the drag bends most.
+    speed = 1.0 / np.linspace(1.0 / lowest_speed, 1.0 / highest_speed, SWEEP_SPEEDS)
     flight = level_flight(aircraft, load, speed=speed)
     trust = flight_trust(flight.trimmed.state)
     trust = np.where(flight.converged, trust, Trust.NOT_CONVERGED).astype(np.uint8)
@@ -184,10 +185,9 @@ def _best(speed: FloatArray, value: FloatArray, usable: NDArray[np.bool_]) -> fl
     inside = 0 < index < speed.size - 1 and bool(usable[index - 1] and usable[index + 1])
     if not inside:
         return float(speed[index])
-    left, middle, right = value[index - 1 : index + 2]
-    curvature = left - 2.0 * middle + right
-    shift = 0.5 * (left - right) / curvature if curvature < 0.0 else 0.0
-    return float(speed[index] + shift * (speed[1] - speed[0]))
+    around = slice(index - 1, index + 2)
+    bend, slope, _ = np.polyfit(speed[around] - speed[index], value[around], 2)
+    return float(speed[index] - 0.5 * slope / bend) if bend < 0.0 else float(speed[index])
 
 
 def lift_curve_result(aircraft: Aircraft, flight: Trimmed, *, onset: StallOnset) -> LiftCurveResult:

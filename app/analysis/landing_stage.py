@@ -17,8 +17,7 @@ from solver.aircraft.landing import (
     speed_margins,
 )
 from solver.aircraft.trim import Trimmed
-from solver.section.held import HELD
-from solver.section.packed import HIGH, LOW, NOMINAL, PackedPolars
+from solver.section.packed import HELD, HIGH, LOW, NOMINAL, PackedPolars
 
 NAN = float("nan")
 

@@ -75,7 +75,13 @@ def section_data(source: SectionSource) -> SectionData:
     thin = outline_thin_airfoil(outline)
     if not tables.lift:
         return SectionData(source, outline, thin, estimate_polar(outline))
-    polar = polar_from_sweeps(source.name, tables.lift, tables.drag, thin=thin)
+    polar = polar_from_sweeps(
+        source.name,
+        tables.lift,
+        tables.drag,
+        thin=thin,
+        source=tables.source or "wind-tunnel tables that do not say where they come from",
+    )
     return SectionData(source, outline, thin, polar)
 
 
@@ -249,12 +255,13 @@ def _findings(polar: Polar, landing: tuple[float, float]) -> tuple[str, ...]:
         )
     for low, high in polar.unknown:
         found.append(
-            f"Between Re {low:,.0f} and {high:,.0f} the largest lift jumps by more than the "
-            "scatter of measurements: it is not known there, and the lower value is taken."
+            f"Between Re {round(low, -3):,.0f} and {round(high, -3):,.0f} the largest lift jumps "
+            "by more than measurements scatter: it is not known there, and the lower value is "
+            "taken."
         )
     inside = (polar.reynolds >= 0.8 * landing[0]) & (polar.reynolds <= 1.25 * landing[1])
     for index in np.flatnonzero(inside):
-        at = f"At Re {polar.reynolds[index]:,.0f}"
+        at = f"At Re {round(polar.reynolds[index], -3):,.0f}"
         start, end = np.degrees([polar.plateau_from[index], polar.plateau_to[index]])
         if np.isfinite(start) and end - start > 2.0:
             found.append(

@@ -41,8 +41,8 @@ from solver.aircraft.stability import stability
 from solver.aircraft.trim import Load, Trimmed, trim
 from solver.atmosphere import Air, standard_atmosphere
 from solver.section.finish import finish
-from solver.section.held import HELD, pack_with_held
-from solver.section.packed import HIGH, LOW, NOMINAL, PackedPolars
+from solver.section.packed import HELD, HIGH, LOW, NOMINAL, PackedPolars
+from solver.section.packing import pack_with_held
 from solver.section.thin_airfoil import viscous_flap_factor
 
 NOTHING_EXTRA: frozenset[str] = frozenset()

@@ -197,7 +197,7 @@ def pack_section(
     grid : ndarray, shape (na,)
         Equally spaced [rad].
     drag_factor, largest_lift_debit : float
-        See :func:`solver.section.packed.pack_polars` [-].
+        See :func:`solver.section.packing.pack_polars` [-].
     hold_at_reynolds : float or None
         The same [-].
 

@@ -14,6 +14,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
+from solver.section.sweeps import KNEE_SHARE
 from solver.wing.lifting_line import Flow, Loading, solve
 
 FloatArray = NDArray[np.float64]
@@ -99,13 +100,16 @@ def critical_share(state: Loading, *, surface: int = 0) -> FloatArray:
     Returns
     -------
     ndarray, shape (...)
-        [-]; about 0.98 at the onset of stall.
+        [-]; 0.98 at the onset of stall, by the definition of the knee. Between runs of
+        a table whose curves differ, the blended knee can lie lower on the blended
+        curve: it is given no more credit than the definition does.
     """
     left = room(state)
     on_surface = state.flow.lattice.surface == surface
     first = np.argmin(np.where(on_surface, left.angle, np.inf), axis=-1)[..., None]
     share = np.broadcast_to(state.lift / left.limit, left.angle.shape)
-    return np.asarray(np.take_along_axis(share, first, axis=-1)[..., 0])
+    found = np.take_along_axis(share, first, axis=-1)[..., 0]
+    return np.asarray(np.clip(found, KNEE_SHARE, 1.0))
 
 
 def stalling_range(state: Loading, *, surface: int = 0) -> tuple[FloatArray, FloatArray]:

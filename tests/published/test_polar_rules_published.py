@@ -14,7 +14,8 @@ import pytest
 
 from app.tables import read_drag_table, read_lift_table
 from solver.section.confidence import drag_half_width, largest_lift_half_width
-from solver.section.packed import HIGH, LOW, NOMINAL, pack_polars
+from solver.section.packed import HIGH, LOW, NOMINAL
+from solver.section.packing import pack_polars
 from solver.section.polar import CellOrigin, Polar, polar_from_sweeps
 from solver.section.sweeps import Sweep, first_attached_peak, hysteresis
 from solver.section.thin_airfoil import ThinAirfoil

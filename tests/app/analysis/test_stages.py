@@ -250,6 +250,15 @@ def test_no_wing_is_left_without_words(analysis, heronsgill):
     assert results.reason
 
 
+@pytest.mark.parametrize("name", ["NACA 6409", "NACA 4412", "NACA 23012", "NACA 0012"])
+def test_any_closed_form_section_gives_verdicts(analysis, name):
+    scenario = read_scenario(TARN_RIDGE)
+    scenario.set_values({"root_section": name})
+    results = analysis.run(scenario.freeze(), want=EXTRAS)
+    assert len(results.margins) == 7
+    assert all(margin.reason for margin in results.margins)
+
+
 def test_the_examples_are_where_the_package_says():
     assert Path(HERONSGILL).is_file()
     assert Path(TARN_RIDGE).is_file()

@@ -10,7 +10,8 @@ import pytest
 from solver.errors import InputError
 from solver.section.confidence import lift_jumps
 from solver.section.hermite import monotone_curve, node_slopes
-from solver.section.packed import HIGH, LOW, NOMINAL, pack_polars
+from solver.section.packed import HIGH, LOW, NOMINAL
+from solver.section.packing import pack_polars
 from solver.section.polar import CellOrigin, polar_from_sweeps
 from solver.section.run_curve import merge_drag, merge_lift, smooth_readings
 from solver.section.stalled_flow import beyond, plate_drag, plate_lift, plate_moment

@@ -8,7 +8,8 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from solver.errors import InputError
-from solver.section.packed import HIGH, LOW, NOMINAL, pack_polars
+from solver.section.packed import HELD, HIGH, LOW, NOMINAL
+from solver.section.packing import pack_polars, pack_with_held
 from solver.section.polar import CellOrigin, polar_from_columns, polar_from_functions
 
 SCALE = np.radians(16.0)
@@ -286,3 +287,21 @@ def test_an_unusable_number_is_named_in_the_refusal(keywords, name):
 def test_no_section_is_refused():
     with pytest.raises(InputError, match="polars must be one section or more"):
         pack_polars([])
+
+
+def test_the_counterfactual_stands_beside_the_band_also_where_an_interval_is_unknown():
+    polars = [smooth_polar(), polar_of_two_runs()]
+    packed, plain = pack_with_held(polars), pack_polars(polars)
+    held = pack_polars(polars, hold_at_reynolds=np.inf)
+    angle, reynolds = np.radians(np.linspace(-5.0, 15.0, 41)), np.geomspace(4e4, 6e5, 41)
+    for section in (0, 1):
+        for band in (LOW, NOMINAL, HIGH):
+            found = packed.evaluate(angle, reynolds, band=band, section=section)
+            same = plain.evaluate(angle, reynolds, band=band, section=section)
+            # The grid's extra nodes may only round.
+            np.testing.assert_allclose(found.lift, same.lift, atol=1e-9)
+        found = packed.evaluate(angle, reynolds, band=HELD, section=section)
+        same = held.evaluate(angle, reynolds, band=NOMINAL, section=section)
+        np.testing.assert_allclose(found.lift, same.lift, atol=1e-9)
+        limits = packed.limits(reynolds, band=HELD, section=section)
+        assert np.ptp(limits.largest_lift) < 1e-9

@@ -8,7 +8,7 @@ import numpy as np
 import pytest
 
 from solver.errors import InputError
-from solver.section.packed import pack_polars
+from solver.section.packing import pack_polars
 from solver.section.polar import polar_from_functions
 from solver.wing.forces import trefftz_drag
 from solver.wing.influence import influence
