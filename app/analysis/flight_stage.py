@@ -121,7 +121,7 @@ def trim_result(
             trim_induced=float(flight.trim_induced),
             trim_profile=float(flight.trim_profile),
         ),
-        lift_to_drag=trimmed.load.force / float(drag),
+        lift_to_drag=float(trimmed.load.force / drag),
         electric_power_w=float(electric_power(drive, drag=drag, speed=np.asarray(speed))),
         trust=trust,
         status=TRUST_WORDS[trust],

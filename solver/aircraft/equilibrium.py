@@ -7,7 +7,7 @@ attack. Targets are a speed, an angle, or the knee of the first section to stall
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Protocol
 
 import numpy as np
@@ -35,34 +35,57 @@ SETTLING = np.radians(1.0)
 """The wake is laid anew once a step turns the aircraft by less than this [rad]."""
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, eq=False)
 class Load:
     """What the aircraft carries, in what air, balanced where.
 
     Fields
     ------
-    force : float
-        Load factor times weight [N].
+    force : float or ndarray, shape (...)
+        Load factor times weight [N]; an array loads each case of a batch by itself.
     density : float
         [kg/m3]
     kinematic_viscosity : float
         [m2/s]
     balance_x : float
         Balance point behind the wing root's leading edge [m].
+
+    Notes
+    -----
+    With density and viscosity 1 the speed is speed over viscosity and the force is
+    what the wing itself sees: lift coefficient and Reynolds number decide all else.
     """
 
-    force: float
+    force: float | FloatArray
     density: float
     kinematic_viscosity: float
     balance_x: float
 
+    def case(self, index: int) -> Load:
+        """What one case of a batch carries; all carry the same unless `force` is an array.
+
+        Parameters
+        ----------
+        index : int
+
+        Returns
+        -------
+        Load
+        """
+        return self if np.ndim(self.force) == 0 else replace(self, force=self.forces[index])
+
+    @property
+    def forces(self) -> FloatArray:
+        """The force as an array, shape (...) [N]."""
+        return np.asarray(self.force, dtype=np.float64)
+
     def area_at(self, speed: FloatArray) -> FloatArray:
         """Lift over dynamic pressure that carries the load at a speed [m2]."""
-        return np.asarray(self.force / (0.5 * self.density * np.square(speed)))
+        return np.asarray(self.forces / (0.5 * self.density * np.square(speed)))
 
     def speed_at(self, lift_area: FloatArray) -> FloatArray:
         """Speed at which a lift area carries the load [m/s]."""
-        return np.asarray(np.sqrt(2.0 * self.force / (self.density * lift_area)))
+        return np.asarray(np.sqrt(2.0 * self.forces / (self.density * lift_area)))
 
 
 @dataclass(frozen=True, eq=False)

@@ -81,7 +81,7 @@ class Trimmed:
             speed=self.speed[index],
             angle=self.angle[index],
             elevator=self.elevator[index],
-            load=self.load,
+            load=self.load.case(index),
         )
 
     @property
@@ -156,7 +156,7 @@ def trim(
     if (speed is None) == (angle is None):
         raise ValueError("give exactly one of speed and angle")
     given = np.asarray(speed if angle is None else angle, dtype=np.float64)
-    batch = np.broadcast_shapes(given.shape, np.shape(band))
+    batch = np.broadcast_shapes(given.shape, np.shape(band), load.forces.shape)
     given = np.array(np.broadcast_to(given, batch))
     target: Target = AtSpeed(given) if angle is None else AtAngle(given)
     problem = Problem(
@@ -192,9 +192,11 @@ def trim_at_knee(aircraft: Aircraft, load: Load, *, band: ArrayLike = NOMINAL) -
     Trimmed
         With a mask of the cases that converged.
     """
-    bands = np.asarray(band)
+    batch = np.broadcast_shapes(np.shape(band), load.forces.shape)
+    bands = np.broadcast_to(np.asarray(band), batch)
     problem = Problem(aircraft=aircraft, load=load, target=AtKnee(), band=bands[..., None])
-    guess = _elliptic_guess(problem, np.full(bands.shape, SAFE_SHARE * _largest_area(problem)))
+    area = np.array(np.broadcast_to(SAFE_SHARE * _largest_area(problem), batch))
+    guess = _elliptic_guess(problem, area)
     return _solved(problem, guess, field=None)
 
 
@@ -203,13 +205,14 @@ SAFE_SHARE = 0.7
 below every knee for any loading that a tapered wing has."""
 
 
-def _largest_area(problem: Problem) -> float:
-    """Least of the wing sections' largest lift at a first guess of speed, as an area [m2]."""
+def _largest_area(problem: Problem) -> FloatArray:
+    """Least of the wing sections' largest lift at a first guess of speed, as areas [m2]."""
     aircraft, load = problem.aircraft, problem.load
     speed = load.speed_at(np.asarray(aircraft.area))
-    reynolds = speed / load.kinematic_viscosity * aircraft.lattice.chord
+    reynolds = speed[..., None] / load.kinematic_viscosity * aircraft.lattice.chord
     limits = aircraft.polars.limits(reynolds, band=NOMINAL)
-    return float(np.min(limits.largest_lift[aircraft.on_wing])) * aircraft.area
+    least = np.min(limits.largest_lift[..., aircraft.on_wing], axis=-1)
+    return np.asarray(least * aircraft.area)
 
 
 def _elliptic_guess(problem: Problem, lift_area: FloatArray) -> Guess:
