@@ -36,7 +36,7 @@ def margin_tile(margin: Margin) -> dict[str, object]:
         return sign * (value - margin.limit) / scale if math.isfinite(value) else None
 
     found = math.isfinite(margin.value)
-    room = words.difference(margin.margin, margin.value, margin.unit) if found else ""
+    room = words.part(margin.margin, margin.value, margin.unit, sign=True) if found else ""
     value, limit = words.number(margin.value, margin.unit), words.given(margin.limit, margin.unit)
     return {
         "key": margin.key,
@@ -132,8 +132,8 @@ def station_words(row: Mapping[str, Any]) -> str:
         One line.
     """
     return (
-        f"{words.number(row['y'], 'm')} from the centre: "
-        f"chord {words.number(1e3 * row['chord'], 'mm')}; at landing "
+        f"{words.number(row['y'], 'm')}: "
+        f"chord {words.number(1e3 * row['chord'], 'mm')}, at landing "
         f"Re {words.reynolds(1e3 * row['re_landing'])}, "
         f"lift {words.number(row['lift_landing'])} of {words.number(row['limit_landing'])}"
     )

@@ -7,7 +7,7 @@ from bokeh.models import ColumnDataSource
 
 from app.analysis.results import BalanceResult, Results
 from app.figures import look, words
-from app.figures.plot import Labels, Plot, TrustLine, add_reading, fit, new_figure
+from app.figures.plot import Label, Labels, Plot, TrustLine, add_reading, fit, new_figure
 from app.figures.speed_marks import SpeedMarks
 
 
@@ -18,7 +18,7 @@ class ChordRuler(Plot):
         self.model = plot = new_figure(
             "chord_ruler",
             "Points on the mean aerodynamic chord",
-            x_label="behind its leading edge [% of it]",
+            x_label="behind its leading edge [% of that chord]",
             y_label="",
             x_range=(-5.0, 105.0),
             y_range=(-1.6, 2.6),
@@ -106,8 +106,6 @@ class ElevatorOverSpeed(Plot):
             "Elevator for level flight over speed",
             x_label="true airspeed [m/s]",
             y_label="elevator, down [deg]",
-            x_range=(8.0, 25.0),
-            y_range=(-25.0, 25.0),
         )
         limit, today = look.colour("limit"), look.colour("today")
         self.stops = ColumnDataSource({"inner": [], "outer": []})
@@ -142,7 +140,7 @@ class ElevatorOverSpeed(Plot):
         speed = np.asarray(balance.speed_m_s)
         fit(self.x_range, speed)
         reach = 1.25 * travel
-        fit(self.y_range, [-reach, reach])
+        fit(self.y_range, [-reach, reach], room=(0.0, 0.0))
         far = travel + 0.07 * self.height
         self.stops.data = {"inner": [travel, -travel], "outer": [far, -far]}
         self.nominal.feed(speed, balance.elevator_nominal_deg, balance.trust)
@@ -153,7 +151,7 @@ class ElevatorOverSpeed(Plot):
         balance = results.balance
         speed = np.asarray(balance.speed_m_s)
         height = self.height
-        rows = []
+        rows: list[Label] = []
         for values, text, colour, offset in (
             (balance.elevator_nominal_deg, "balance point", "today", 0.09),
             (balance.elevator_forward_deg, "forward balance point", "trim", -0.09),
@@ -169,10 +167,11 @@ class ElevatorOverSpeed(Plot):
             edge = sign * balance.elevator_travel_deg
             rows.append(
                 (
-                    left + 0.02 * across,
+                    left + 0.98 * across,
                     edge - sign * 0.05 * height,
                     f"stop, {words.number(edge, 'deg')}",
                     look.colour("limit"),
+                    "right",
                 )
             )
         self.labels.feed(rows)

@@ -21,7 +21,6 @@ class SpeedsOnOneAxis(Plot):
             "Speeds on one axis",
             x_label="true airspeed [m/s]",
             y_label="",
-            x_range=(8.0, 20.0),
             y_range=(-0.7, 3.8),
             described="Stall, launch, landing and cruise speed on one axis with their bands",
         )
@@ -79,7 +78,7 @@ class SpeedsOnOneAxis(Plot):
         )
         rows = self._rows(results, stall, ends)
         values = [row[0] for row in rows]
-        fit(self.x_range, values, [row[2] for row in rows], [0.93 * stall])
+        fit(self.x_range, values, [row[2] for row in rows], [0.93 * stall], room=(0.02, 0.3))
         names = ("x", "y", "low", "high", "colour", "marker")
         self.speeds.data = {name: [row[at] for row in rows] for at, name in enumerate(names)}
         self._feed_words(results, rows)
@@ -114,14 +113,16 @@ class SpeedsOnOneAxis(Plot):
         across = self.width
         labels, least = [], []
         limits = {margin.key: margin.limit for margin in results.margins}
-        for value, place, low, high, shade, _ in rows:
-            text = words.number(value, "m/s")
+        for value, place, _, high, shade, _ in rows:
+            text, right = words.number(value, "m/s"), max(value, high)
             key = {1.0: "launch_over_stall", 2.0: "landing_over_stall"}.get(place)
             if key in limits and np.isfinite(stall):
                 text += f", {words.number(value / stall)} of stall"
-                least.append((limits[key] * stall, place, limits[key]))
-            del low
-            labels.append((max(value, high) + 0.02 * across, place, text, shade))
+                asked = limits[key] * stall
+                least.append((asked, place))
+                # Where the limit is missed its mark stands where the words would.
+                right = max(right, asked)
+            labels.append((right + 0.02 * across, place, text, shade))
         self.labels.feed(labels)
         self.least.data = {
             "x": [row[0] for row in least],
@@ -137,6 +138,6 @@ class SpeedsOnOneAxis(Plot):
                     look.colour("limit"),
                     "right",
                 )
-                for x, place, _ in least
+                for x, place in least
             ]
         )

@@ -8,7 +8,7 @@ from bokeh.models import ColumnDataSource
 from app.analysis.results import Results, SpanResult, Trust
 from app.figures import look
 from app.figures.plot import Labels, Plot, TrustLine, fit, new_figure
-from app.figures.span_plots import ACROSS, CONDITION_WORDS, condition_colour, label_on
+from app.figures.span_plots import ACROSS, CONDITION_WORDS, condition_colour, fit_to_span, label_on
 from app.figures.station import Station, half_span
 
 
@@ -27,8 +27,6 @@ class Loading(Plot):
             "How the lift is spread",
             x_label=ACROSS,
             y_label="chord × lift / mean chord [-]",
-            x_range=(0.0, 1.25),
-            y_range=(0.0, 1.5),
         )
         self.ellipse = ColumnDataSource({"x": [], "low": [], "high": []})
         grey = look.colour("outline")
@@ -45,7 +43,7 @@ class Loading(Plot):
         landing, cruise = results.landing.landing_span, results.cruise.span
         half = half_span(results.planform)
         ellipse = _ellipse(landing, half)
-        fit(self.x_range, [0.0, half], include=(0.0,))
+        fit_to_span(self.x_range, results)
         fit(self.y_range, landing.loading, cruise.loading, ellipse[1], include=(0.0,))
         self.ellipse.data = {"x": ellipse[0], "low": [0.0] * len(ellipse[0]), "high": ellipse[1]}
         below = 0.08 * self.top

@@ -28,7 +28,6 @@ class PlanformDrawing(Plot):
             "Wing and tail from above, to scale",
             x_label="distance from the centre [m]",
             y_label="behind the root's leading edge [m]",
-            x_range=(-1.3, 1.3),
             y_range=(1.2, -0.2),
             height=height,
             described="Wing and tail from above, drawn to scale, with mean aerodynamic chord, "
@@ -55,7 +54,7 @@ class PlanformDrawing(Plot):
             line_color=None,
             hatch_pattern="right_diagonal_line",
             hatch_color=look.colour("limit"),
-            hatch_alpha=0.7,
+            hatch_alpha=0.45,
             hatch_scale=7,
             hatch_weight=1.2,
         )
@@ -88,7 +87,7 @@ class PlanformDrawing(Plot):
         """Feed the figure."""
         plan, landing = results.planform, results.landing
         half = half_span(plan)
-        fit(self.x_range, [-1.04 * half, 1.04 * half])
+        fit(self.x_range, [-half, half], room=(0.04, 0.04))
         bottom, top = float(np.max(plan.tail_x)), float(np.min(plan.wing_x))
         middle = (bottom + top) / 2.0
         reach = self.height / 2.0

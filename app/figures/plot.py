@@ -21,9 +21,10 @@ from numpy.typing import ArrayLike
 from app.analysis.results import Results, Trust
 from app.figures import look
 
-PLOT_HEIGHT = 190
+PLOT_HEIGHT = 186
 DASHES = {Trust.VALID: "solid", Trust.EXTRAPOLATED: "8 4", Trust.INDICATIVE: "2 3"}
 NAMES = {Trust.VALID: "valid", Trust.EXTRAPOLATED: "extrapolated", Trust.INDICATIVE: "indicative"}
+_UNSET = (0.0, 1e-9)
 _FILL_LEAST = 0.45  # a range filled less than this is drawn in again
 
 
@@ -33,8 +34,8 @@ def new_figure(
     *,
     x_label: str,
     y_label: str,
-    x_range: tuple[float, float],
-    y_range: tuple[float, float],
+    x_range: tuple[float, float] | None = None,
+    y_range: tuple[float, float] | None = None,
     height: int = PLOT_HEIGHT,
     x_axis_type: Literal["linear", "log"] = "linear",
     described: str = "",
@@ -48,7 +49,8 @@ def new_figure(
     title, x_label, y_label : str
         As shown; labels carry their unit in brackets.
     x_range, y_range : tuple of float
-        Ranges at the start, in the units of the labels.
+        Ranges at the start, in the units of the labels; without one the first
+        data decide.
     height : int
         Height on screen. [px]
     x_axis_type : str
@@ -66,8 +68,8 @@ def new_figure(
         title=title,
         height=height,
         sizing_mode="stretch_width",
-        x_range=Range1d(start=x_range[0], end=x_range[1]),
-        y_range=Range1d(start=y_range[0], end=y_range[1]),
+        x_range=_range(x_range),
+        y_range=_range(y_range),
         x_axis_label=x_label,
         y_axis_label=y_label,
         x_axis_type=x_axis_type,
@@ -76,6 +78,11 @@ def new_figure(
         html_attributes={"role": "img", "aria-label": described or title},
     )
     return plot
+
+
+def _range(ends: tuple[float, float] | None) -> Range1d:
+    start, end = ends or _UNSET
+    return Range1d(start=start, end=end)
 
 
 class Plot:
@@ -231,7 +238,12 @@ def bounds(axis_range: Range1d) -> tuple[float, float]:
     return float(str(axis_range.start)), float(str(axis_range.end))
 
 
-def fit(axis_range: Range1d, *values: ArrayLike, include: Sequence[float] = ()) -> None:
+def fit(
+    axis_range: Range1d,
+    *values: ArrayLike,
+    include: Sequence[float] = (),
+    room: tuple[float, float] = (0.08, 0.12),
+) -> None:
     """Widen or draw in a range, only when the data ask for it.
 
     Parameters
@@ -242,10 +254,14 @@ def fit(axis_range: Range1d, *values: ArrayLike, include: Sequence[float] = ()) 
         Everything that should be seen; not-finite values are left out.
     include : sequence of float
         Values always inside, for example zero.
+    room : tuple of float
+        Left free below and above the data, as shares of what they span.
     """
     seen = np.concatenate([np.ravel(np.asarray(part, dtype=np.float64)) for part in values])
     seen = seen[np.isfinite(seen)]
     if not seen.size:
+        if bounds(axis_range) == _UNSET:
+            axis_range.update(start=0.0, end=1.0)
         return
     low = min(float(seen.min()), *include) if include else float(seen.min())
     high = max(float(seen.max()), *include) if include else float(seen.max())
@@ -253,7 +269,7 @@ def fit(axis_range: Range1d, *values: ArrayLike, include: Sequence[float] = ()) 
     inside = low >= start and high <= end
     if inside and (high - low) >= _FILL_LEAST * (end - start):
         return
-    first, last = _round_out(low, high, include)
+    first, last = _round_out(low, high, include, room)
     if (first, last) == (start, end):
         return
     if bounds(axis_range)[0] > bounds(axis_range)[1]:
@@ -261,14 +277,16 @@ def fit(axis_range: Range1d, *values: ArrayLike, include: Sequence[float] = ()) 
     axis_range.update(start=first, end=last)
 
 
-def _round_out(low: float, high: float, include: Iterable[float]) -> tuple[float, float]:
+def _round_out(
+    low: float, high: float, include: Iterable[float], room: tuple[float, float]
+) -> tuple[float, float]:
     width = max(high - low, 1e-3 * max(abs(low), abs(high)), 1e-9)
-    first, last = low - 0.08 * width, high + 0.12 * width
+    first, last = low - room[0] * width, high + room[1] * width
     bounds = set(include)
     # A bound that is itself the end of the data (a zero line) needs no room.
     if low in bounds and low == 0.0:
         first = 0.0
-    step = _nice(width / 10.0)
+    step = _nice(width / 20.0)
     return math.floor(first / step + 1e-9) * step, math.ceil(last / step - 1e-9) * step
 
 

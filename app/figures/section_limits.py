@@ -8,7 +8,7 @@ from bokeh.models import ColumnDataSource
 from app.analysis.results import Results, SectionResult
 from app.figures import look
 from app.figures.plot import DASHES, Labels, add_reading, fit, new_figure, split_by_trust
-from app.figures.section_plots import CONDITIONS, SectionPlot
+from app.figures.section_plots import CONDITIONS, SectionPlot, on_wing
 from app.figures.station import Station
 
 
@@ -93,10 +93,11 @@ class LargestLift(SectionPlot):
             "right": [last / 1e3 for _, last in section.unknown_reynolds],
         }
         seen = [section.largest_lift_low, section.largest_lift_high]
-        if "wing" in section.role:
+        if on_wing(section):
             # So that the room between a station's lift and its limit is seen.
-            seen.append(np.array([np.max(results.landing.landing_span.lift)]))
-        fit(self.y_range, *seen)
+            spans = (results.landing.landing_span, results.cruise.span)
+            seen.append(np.array([np.max(span.lift) for span in spans]))
+        fit(self.y_range, *seen, room=(0.25, 0.12))
         self._feed_ranges(section)
 
     def _feed_ranges(self, section: SectionResult) -> None:

@@ -30,6 +30,11 @@ ALL = 0.0
 _NEAR = 1.12  # runs within this ratio are shown with a curve brought forward
 
 
+def on_wing(section: SectionResult) -> bool:
+    """Whether a section belongs to the wing, so that a station of it means something."""
+    return section.role != "tail"
+
+
 class SectionPlot(Plot):
     """A plot of the section chosen on the sheet."""
 
@@ -56,7 +61,7 @@ class SectionPlot(Plot):
         section = results.sections[index]
         for mark in self.marks:
             # The station lies on the wing; a tail's section has no part in it.
-            mark.visible = "wing" in section.role
+            mark.visible = on_wing(section)
         return section
 
 
@@ -277,7 +282,6 @@ class LiftOverAngle(PolarPlot):
             x_label="angle of attack [deg]",
             y_label="lift coefficient [-]",
             x_range=(-8.0, 18.0),
-            y_range=(-0.6, 1.5),
         )
         reading = (("angle", "$x{0.0} deg"), ("lift coefficient", "$y{0.00}"))
         super().__init__(plot, across=ANGLE, up=LIFT, reading=reading)
@@ -297,7 +301,6 @@ class LiftOverDrag(PolarPlot):
             x_label="drag coefficient, times 1000 [-]",
             y_label="lift coefficient [-]",
             x_range=(0.0, 60.0),
-            y_range=(-0.6, 1.5),
         )
         reading = (("drag coefficient, times 1000", "$x{0.0}"), ("lift coefficient", "$y{0.00}"))
         super().__init__(plot, across=lambda table: 1e3 * DRAG(table), up=LIFT, reading=reading)
@@ -317,7 +320,6 @@ class MomentOverAngle(PolarPlot):
             x_label="angle of attack [deg]",
             y_label="moment coefficient [-]",
             x_range=(-8.0, 18.0),
-            y_range=(-0.14, 0.02),
         )
         reading = (("angle", "$x{0.0} deg"), ("moment coefficient", "$y{0.000}"))
         super().__init__(plot, across=ANGLE, up=MOMENT, reading=reading)

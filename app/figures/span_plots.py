@@ -3,12 +3,13 @@
 from __future__ import annotations
 
 import numpy as np
-from bokeh.models import ColumnDataSource
+from bokeh.models import ColumnDataSource, Range1d
 from bokeh.plotting import figure
 
 from app.analysis.results import Results, SpanResult, Trust
 from app.figures import look, words
 from app.figures.plot import Labels, Plot, TrustLine, add_reading, fit, new_figure
+from app.figures.section_plots import on_wing
 from app.figures.station import Station, half_span
 
 ACROSS = "distance from the centre [m]"
@@ -47,6 +48,19 @@ def condition_colour(condition: str) -> str:
         A hexadecimal colour.
     """
     return look.colour("today" if condition == "landing" else "cruise")
+
+
+def fit_to_span(axis_range: Range1d, results: Results) -> None:
+    """Make room for the half-wing, root to tip.
+
+    Parameters
+    ----------
+    axis_range : Range1d
+        Of the distance from the centre [m].
+    results : Results
+        Whose planform gives the span.
+    """
+    fit(axis_range, [0.0, half_span(results.planform)], include=(0.0,), room=(0.0, 0.04))
 
 
 class Limit:
@@ -129,8 +143,6 @@ class LocalLift(Plot):
             f"Local lift and its limit {said}",
             x_label=ACROSS,
             y_label="section lift coefficient [-]",
-            x_range=(0.0, 1.25),
-            y_range=(0.0, 1.6),
         )
         self.limit = Limit(plot)
         self.lift = TrustLine(plot, colour=condition_colour(condition), width=2.5)
@@ -146,7 +158,7 @@ class LocalLift(Plot):
     def update(self, results: Results) -> None:
         """Feed the figure."""
         span = span_of(results, self.condition)
-        fit(self.x_range, [0.0, half_span(results.planform)], include=(0.0,))
+        fit_to_span(self.x_range, results)
         fit(self.y_range, span.lift, span.limit_high, include=(0.0,))
         depth = 0.06 * self.height
         band = (span.limit_low, span.limit, span.limit_high)
@@ -208,8 +220,6 @@ class RoomAlongSpan(Plot):
             "Lift left to each station at landing",
             x_label=ACROSS,
             y_label="limit less local lift [-]",
-            x_range=(0.0, 1.25),
-            y_range=(0.0, 1.0),
         )
         self.band = ColumnDataSource({"x": [], "low": [], "high": []})
         today = look.colour("today")
@@ -238,7 +248,7 @@ class RoomAlongSpan(Plot):
         """Feed the figure."""
         span = results.landing.landing_span
         low, high = span.limit_low - span.lift, span.limit_high - span.lift
-        fit(self.x_range, [0.0, half_span(results.planform)], include=(0.0,))
+        fit_to_span(self.x_range, results)
         fit(self.y_range, low, high, include=(0.0,))
         found = (np.asarray(span.trust) != Trust.NOT_CONVERGED) & np.isfinite(span.room)
         self.band.data = {
@@ -256,7 +266,7 @@ class RoomAlongSpan(Plot):
         self.least_mark.data = {"x": [place], "y": [room]}
         below = 0.07 * self.height
         tip = float(span.y_m[-1])
-        inside = min(max(place, 0.16 * tip), 0.84 * tip)
+        inside = min(max(place, 0.21 * tip), 0.79 * tip)
         text = f"least left, {words.number(room)}"
         self.least.feed([(inside, room - below, text, look.colour("limit"), "center")])
 
@@ -280,8 +290,6 @@ class ReynoldsAlongSpan(Plot):
             f"Reynolds number{alone}" if alone else "Reynolds number along the span",
             x_label=ACROSS,
             y_label="Reynolds number [thousand]",
-            x_range=(0.0, 1.25),
-            y_range=(0.0, 400.0),
         )
         self.unknown = ColumnDataSource({"bottom": [], "top": [], "left": [], "right": []})
         plot.quad(
@@ -315,22 +323,25 @@ class ReynoldsAlongSpan(Plot):
         """Feed the figure."""
         spans = {name: span_of(results, name) for name in self.conditions}
         half = half_span(results.planform)
-        fit(self.x_range, [0.0, half], include=(0.0,))
+        fit_to_span(self.x_range, results)
         values = [span.reynolds / 1e3 for span in spans.values()]
         fit(self.y_range, *values, include=(0.0,))
         above = 0.06 * self.top
         rows = []
         for name, span in spans.items():
             self.lines[name].feed(span.y_m, span.reynolds / 1e3, span.trust)
+            # Reynolds number falls towards the tip: free room lies above a line's
+            # inner end and below its outer end.
+            outer = name == "landing"
             row = label_on(
                 span.y_m,
                 span.reynolds / 1e3,
                 CONDITION_WORDS[name],
                 condition_colour(name),
-                below=-above,
-                share=0.98,
+                below=above if outer else -above,
+                share=1.0 if outer else 0.0,
             )
-            rows.append((*row, "right"))
+            rows.append((*row, "right" if outer else "left"))
         self.labels.feed(rows)
         self.unknown.data = _unknown(results, 0.0, half, self.top)
 
@@ -339,7 +350,7 @@ def _unknown(results: Results, left: float, right: float, top: float) -> dict[st
     intervals = {
         interval
         for section in results.sections
-        if "wing" in section.role
+        if on_wing(section)
         for interval in section.unknown_reynolds
         if interval[0] / 1e3 < top
     }

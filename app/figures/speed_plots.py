@@ -31,8 +31,6 @@ class DragOverSpeed(Plot):
             "Drag in level flight, by its parts",
             x_label=SPEED,
             y_label="drag [N]",
-            x_range=(8.0, 25.0),
-            y_range=(0.0, 6.0),
         )
         names = [f"{part}_{end}" for part, _, _ in _PARTS for end in ("low", "high")]
         self.stack = ColumnDataSource({name: [] for name in ("x", *names)})
@@ -181,8 +179,6 @@ class CurveOverSpeed(Plot):
             curve.title,
             x_label=SPEED,
             y_label=curve.label,
-            x_range=(8.0, 25.0),
-            y_range=(0.0, 1.0),
         )
         limit = look.colour("limit")
         self.limit = ColumnDataSource({"edge": [], "far": []})
@@ -272,7 +268,9 @@ class CurveOverSpeed(Plot):
             value = float(np.interp(cruise, speed, values))
             self.here.data = {"x": [float(cruise)], "y": [value]}
             text = f"  {words.number(value, self.curve.unit)}"
-            rows.append((float(cruise), value + 0.02 * height, text, look.colour("cruise")))
+            # On the side of the curve where a limit's hatching does not lie.
+            beside = -0.1 if self.curve.margin == "cruise_power" else 0.02
+            rows.append((float(cruise), value + beside * height, text, look.colour("cruise")))
         self.labels.feed(rows)
         best = self.curve.best(sweep) if self.curve.best is not None else float("nan")
         if np.isfinite(best) and speed.size and speed[0] <= best <= speed[-1]:
@@ -281,7 +279,7 @@ class CurveOverSpeed(Plot):
             text = f" {self.curve.best_words} at {words.number(best, 'm/s')}"
             # Under a hollow, over a hill: always off the curve.
             above = self.curve.margin != "cruise_power"
-            place = value + (0.09 if above else -0.11) * height
+            place = value + (0.13 if above else -0.11) * height
             shade = look.colour("body")
             right = best > self.left + 0.6 * self.width
             self.best_label.feed([(best, place, text, shade, "right" if right else "left")])

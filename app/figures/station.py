@@ -161,7 +161,6 @@ class Station:
             fill_color=look.colour("station"),
             line_color=look.colour("today" if condition == "landing" else "cruise"),
             line_width=2,
-            level="overlay",
         )
 
 

@@ -19,8 +19,6 @@ class WingLift(Plot):
             "Wing lift over angle at landing speed",
             x_label="angle of attack [deg]",
             y_label="lift coefficient [-]",
-            x_range=(-4.0, 18.0),
-            y_range=(0.0, 1.5),
         )
         today, limit = look.colour("today"), look.colour("limit")
         self.needed = ColumnDataSource({"y": []})

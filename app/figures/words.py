@@ -11,6 +11,7 @@ MINUS = "\N{MINUS SIGN}"
 THIN_SPACE = "\N{NARROW NO-BREAK SPACE}"
 UNIT_SPACE = "\N{NO-BREAK SPACE}"
 NOT_FOUND = "not found"
+_RAISED = str.maketrans("-0123456789", "⁻⁰¹²³⁴⁵⁶⁷⁸⁹")
 
 
 def number(value: float, unit: str = "", *, figures: int = 3, sign: bool = False) -> str:
@@ -35,8 +36,7 @@ def number(value: float, unit: str = "", *, figures: int = 3, sign: bool = False
     if not math.isfinite(value):
         return NOT_FOUND
     digits = _digits(abs(value), figures)
-    zero = float(digits.replace(THIN_SPACE, "")) == 0.0
-    mark = "" if zero else MINUS if value < 0 else "+" if sign else ""
+    mark = "" if value == 0.0 else MINUS if value < 0 else "+" if sign else ""
     return f"{mark}{digits}{UNIT_SPACE}{unit}" if unit else f"{mark}{digits}"
 
 
@@ -49,7 +49,8 @@ def _digits(size: float, figures: int) -> str:
     if rounded > 0.0:
         decimals = max(0, figures - 1 - math.floor(math.log10(rounded)))
     if decimals > 5:
-        return f"{size:.{figures - 1}e}"
+        short, _, power = f"{size:.{figures - 1}e}".partition("e")
+        return f"{short}×10{str(int(power)).translate(_RAISED)}"
     text = f"{rounded:.{decimals}f}"
     whole, _, rest = text.partition(".")
     if len(whole) > 4:
@@ -78,28 +79,32 @@ def given(value: float, unit: str = "") -> str:
     return f"{text}{UNIT_SPACE}{unit}" if unit else text
 
 
-def difference(value: float, of: float, unit: str = "") -> str:
-    """Write how far two values are apart, to the digits that the first one shows.
+def part(value: float, of: float, unit: str = "", *, sign: bool = False) -> str:
+    """Write a part of a whole, or a difference, to the digits that the whole shows.
 
     Parameters
     ----------
     value : float
-        The difference, in `unit`.
+        The part, in `unit`.
     of : float
         The value whose digits decide, in `unit`.
     unit : str
         Written after the value; empty for a ratio.
+    sign : bool
+        Write a plus before positive values.
 
     Returns
     -------
     str
-        With its sign; `NOT_FOUND` where either is not finite.
+        `NOT_FOUND` where either is not finite.
     """
     if not (math.isfinite(value) and math.isfinite(of)):
         return NOT_FOUND
     _, _, rest = _digits(abs(of), 3).partition(".")
-    text = f"{value:+.{len(rest)}f}".replace("-", MINUS)
-    return f"{text}{UNIT_SPACE}{unit}" if unit else text
+    text = f"{abs(value):.{len(rest)}f}"
+    zero = float(text) == 0.0
+    mark = "" if zero and not sign else MINUS if value < 0 and not zero else "+" if sign else ""
+    return f"{mark}{text}{UNIT_SPACE}{unit}" if unit else f"{mark}{text}"
 
 
 def span_of(low: float, high: float, unit: str = "") -> str:

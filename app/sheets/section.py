@@ -73,13 +73,13 @@ class SectionSheet(Sheet):
         self.which.data = {
             "label": "Section",
             "options": [
-                {"key": str(index), "text": f"{one.name}, {one.role} ({one.origin})"}
+                {"key": str(index), "text": f"{one.name}, {place_of(one, results)}: {one.origin}"}
                 for index, one in enumerate(results.sections)
             ],
             "chosen": str(self.chosen),
         }
         self.levels.data = _levels(section, self.only)
-        self.facts.blocks = _facts(section)
+        self.facts.blocks = _facts(section, place_of(section, results))
         self.findings.blocks = _findings(section)
 
     def _choose_section(self, message: Message) -> None:
@@ -91,6 +91,27 @@ class SectionSheet(Sheet):
         self.only = float(message["choose"])
         if self.results is not None:
             self.feed(self.results)
+
+
+def place_of(section: SectionResult, results: Results) -> str:
+    """Say where a section is used.
+
+    Parameters
+    ----------
+    section : SectionResult
+        One of those in the results.
+    results : Results
+        A wing with one section at root and tip has it once.
+
+    Returns
+    -------
+    str
+        In words.
+    """
+    if section.role == "tail":
+        return "tail"
+    alone = sum(one.role != "tail" for one in results.sections) == 1
+    return "whole wing" if alone else f"wing {section.role}"
 
 
 def _levels(section: SectionResult, only: float) -> dict[str, object]:
@@ -116,9 +137,9 @@ def _levels(section: SectionResult, only: float) -> dict[str, object]:
     }
 
 
-def _facts(section: SectionResult) -> list[dict[str, object]]:
+def _facts(section: SectionResult, place: str) -> list[dict[str, object]]:
     return [
-        title(f"{section.name}: {section.role}"),
+        title(f"{section.name}: {place}"),
         facts(
             [
                 ("Polar", section.origin),
@@ -151,5 +172,9 @@ def _findings(section: SectionResult) -> list[dict[str, object]]:
         title("What the data show"),
         sentences(items or ["Nothing out of the ordinary."]),
         note(TRUST_KEY),
+        note(
+            "Drag curves are as built: finish and build-drag factor included. "
+            "Points are as measured on a smooth tunnel model."
+        ),
         note("Disc: the station at landing. Diamond: the station in cruise."),
     ]

@@ -87,8 +87,8 @@ def _parts(drag: DragParts, status: str) -> list[dict[str, object]]:
     rows = [
         (
             name,
-            words.number(part, "N"),
-            words.number(100.0 * part / total if total else float("nan"), "%"),
+            words.part(part, total, "N"),
+            words.part(100.0 * part / total if total else float("nan"), 10.0, "%"),
         )
         for name, part in parts
     ]

@@ -70,6 +70,7 @@ export function render({model}) {
     const data = model.data
     name.textContent = data.name
     note.textContent = data.note
+    note.title = data.note
     fillTiles({margins: data.margins, chosen: data.chosen})
     fillReason({reason: data.reason, reason_title: data.reason_title, chosen: data.chosen})
     notice.textContent = data.notice
@@ -85,7 +86,7 @@ export function render({model}) {
   model.on("data", show)
   show()
   return node("div", {class: "head"},
-    node("header", {}, node("p", {class: "mark"}, "Halfspan"), name, note),
+    node("header", {}, node("p", {class: "mark"}, "Halfspan", solving), name, note),
     tiles,
-    node("div", {class: "said"}, reason, solving, notice))
+    node("div", {class: "said"}, reason, notice))
 }

@@ -33,6 +33,7 @@ export function render({model}) {
   const point = () => {
     const {share, text} = model.station
     words.textContent = text
+    words.title = text
     slider.setAttribute("aria-valuetext", text)
     if (pointer.idle) slider.value = share
   }
@@ -41,5 +42,5 @@ export function render({model}) {
   show()
   point()
   return node("div", {class: "row"}, list,
-    node("label", {class: "station"}, node("span", {class: "name"}, "Station"), slider, words))
+    node("label", {class: "station"}, node("span", {class: "name", title: "Distance from the centre. Point at the wing, or move the slider; a click on a plot holds or frees the place."}, "Station"), slider, words))
 }

@@ -74,7 +74,7 @@ def make_results(
         inputs=values,
         air=AirResult(120.0, 287.4, DENSITY, VISCOSITY, 339.9),
         sections=(
-            _section("wing root and tip", "E387", True),
+            _section("root", "E387", True),
             _section("tail", "NACA 0009", False),
         ),
         planform=plan,

@@ -169,7 +169,7 @@ def test_the_station_goes_along_from_sheet_to_sheet(session):
     session.tabs._handle_msg({"sheet": "Section", "seq": 2})
     assert session.open.station.share == share
     assert session.open.station.held
-    assert "from the centre" in session.tabs.station["text"]
+    assert "at landing Re" in session.tabs.station["text"]
 
 
 def test_a_margin_opens_its_sheet_and_its_reason(session):
