@@ -23,14 +23,18 @@ from solver.aircraft.trim import Load, Trimmed
 from solver.section.packed import HIGH, LOW, NOMINAL
 from solver.wing.forces import station_forces
 from solver.wing.influence import influence
-from solver.wing.lifting_line import Flow, Loading
+from solver.wing.lifting_line import Flow, Loading, solve
 from solver.wing.stall import Room, follow, least_angle_room, room, stalling_range
 
 FloatArray = NDArray[np.float64]
 TrustArray = NDArray[np.uint8]
 
 SWEEP_SPEEDS = 24
-CURVE_FROM, CURVE_TO, CURVE_STEP = np.radians(-4.0), np.radians(20.0), np.radians(1.0)
+CURVE_FROM, CURVE_STEP, CURVE_POINTS = np.radians(-4.0), np.radians(1.0), 12
+STALLED_STEP, STALLED_POINTS = np.radians(1.25), 6
+"""How the lift curve is followed from the onset of stall on."""
+SAFELY_BELOW = np.radians(1.0)
+"""Distance from the onset up to which the angles need not be followed one by one [rad]."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -201,33 +205,43 @@ def lift_curve_result(aircraft: Aircraft, flight: Trimmed, *, onset: StallOnset)
     onset : StallOnset
         The same aircraft where its first station stalls.
     """
-    angles = np.arange(CURVE_FROM, CURVE_TO + 0.5 * CURVE_STEP, CURVE_STEP)
+    onset_angle = float(onset.trimmed.angle) if bool(onset.found) else 0.0
+    below_onset = max(onset_angle - SAFELY_BELOW, CURVE_FROM + CURVE_STEP)
+    first = np.linspace(CURVE_FROM, below_onset, CURVE_POINTS)
+    beyond = below_onset + SAFELY_BELOW + STALLED_STEP * np.arange(STALLED_POINTS)
+    angles = np.concatenate([first, beyond])
     field = influence(aircraft.lattice, wake_angle=angles)
-    base = flight.state.flow
+    base = replace(flight.state.flow, band=NOMINAL)
+
+    # Before the onset the solution is the only one, so all angles go at once; beyond
+    # it each starts from the one below.
+    below = solve(replace(base, influence=field.case(slice(first.size))), first)
 
     def flow_at(angle: float) -> Flow:
-        index = int(np.argmin(np.abs(angles - angle)))
-        return replace(base, influence=field.case(index), band=NOMINAL)
+        return replace(base, influence=field.case(int(np.argmin(np.abs(angles - angle)))))
 
-    branch = follow(flow_at, angles)
-    lift = np.array([_lift_coefficient(state, aircraft) for state in branch.states])
-    ranges = [stalling_range(state) for state in branch.states]
-    started = np.maximum.accumulate([float(least_angle_room(s)) < 0.0 for s in branch.states])
-    trust = np.array([int(flight_trust(state)) for state in branch.states])
+    branch = follow(flow_at, beyond, start=below.circulation[-1])
+    states = (below, *branch.states)
+    lift = np.concatenate([_lift_coefficient(state, aircraft) for state in states])
+    ranges = [stalling_range(state) for state in states]
+    room_left = np.concatenate([np.atleast_1d(least_angle_room(state)) for state in states])
+    started = np.maximum.accumulate(room_left < 0.0)
+    trust = np.concatenate([np.atleast_1d(flight_trust(state)) for state in states])
     trust = np.where(started & (trust < Trust.INDICATIVE), Trust.INDICATIVE, trust)
     return LiftCurveResult(
         angle_deg=np.degrees(angles),
         lift_coefficient=lift,
         trust=trust.astype(np.uint8),
-        stalled_from=np.array([float(low) for low, _ in ranges]),
-        stalled_to=np.array([float(high) for _, high in ranges]),
+        stalled_from=np.concatenate([np.atleast_1d(low) for low, _ in ranges]),
+        stalled_to=np.concatenate([np.atleast_1d(high) for _, high in ranges]),
         onset_angle_deg=float(np.degrees(onset.trimmed.angle)),
         onset_lift_coefficient=float(onset.trimmed.lift_area) / aircraft.area,
-        largest_lift_coefficient=_first_peak(lift, branch.converged),
+        largest_lift_coefficient=_first_peak(lift, trust < Trust.NOT_CONVERGED),
     )
 
 
-def _lift_coefficient(state: Loading, aircraft: Aircraft) -> float:
+def _lift_coefficient(state: Loading, aircraft: Aircraft) -> FloatArray:
+    """Lift of the whole aircraft on the wing's area, at least one-dimensional [-]."""
     flow = state.flow
     forces = station_forces(
         flow.lattice,
@@ -235,11 +249,13 @@ def _lift_coefficient(state: Loading, aircraft: Aircraft) -> float:
         circulation=state.circulation,
         angle_of_attack=state.angle_of_attack,
     )
-    return float(np.sum(forces.lift)) / aircraft.area
+    return np.atleast_1d(np.sum(forces.lift, axis=-1)) / aircraft.area
 
 
 def _first_peak(lift: FloatArray, converged: NDArray[np.bool_]) -> float:
     """First local maximum of the converged branch; its last value where it still rises."""
     values = lift[converged]
+    if not values.size:
+        return float("nan")
     falls = np.flatnonzero(np.diff(values) < 0.0)
     return float(values[falls[0]] if falls.size else values[-1])

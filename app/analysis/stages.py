@@ -10,7 +10,7 @@ shows are made when that sheet asks for them.
 from __future__ import annotations
 
 import time
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
@@ -47,7 +47,7 @@ from solver.section.thin_airfoil import viscous_flap_factor
 
 NOTHING_EXTRA: frozenset[str] = frozenset()
 EXTRAS = frozenset({"sweep", "lift_curve", "trim_curve"})
-TRIM_SPEEDS = 10
+TRIM_SPEEDS = 8
 BANDS = (LOW, NOMINAL, HIGH)
 
 CAUTIONS = (
@@ -149,6 +149,10 @@ class Analysis:
         key = (inputs.sections, wing.finish, wing.build_drag_factor)
         return self._memo.get("packed", key, make)
 
+    def airframe(self, inputs: Inputs) -> Airframe:
+        """Build the aircraft of a scenario and the sections it is made of."""
+        return self._airframe(inputs)
+
     def _airframe(self, inputs: Inputs) -> Airframe:
         def make() -> Airframe:
             deflection = float(np.radians(0.5 * inputs.tail.elevator_travel_deg))
@@ -237,21 +241,17 @@ class Analysis:
         )
         return self._memo.get("lift curve", key, make)
 
-    def _trim_curve(self, inputs: Inputs, frame: Airframe, air: Air) -> tuple[Trimmed, Trimmed]:
-        """Flight over speed at the nominal and at the forward balance point."""
+    def _trim_curve(self, inputs: Inputs, frame: Airframe, air: Air) -> Trimmed:
+        """Flight over speed, shape (2, speeds): balanced as set, and forward."""
         brief, balance = inputs.brief, inputs.balance
         speed = np.linspace(brief.landing_speed_m_s, 1.3 * brief.cruise_speed_m_s, TRIM_SPEEDS)
+        percents = (balance.balance_percent, balance.balance_forward_percent)
+        points = np.array([frame.aircraft.position(0.01 * percent) for percent in percents])
+        load = load_of(inputs, frame.aircraft, air, percent=percents[0])
 
-        def make() -> tuple[Trimmed, Trimmed]:
-            nominal, forward = (
-                trim(
-                    frame.aircraft,
-                    load_of(inputs, frame.aircraft, air, percent=percent),
-                    speed=speed,
-                )
-                for percent in (balance.balance_percent, balance.balance_forward_percent)
-            )
-            return nominal, forward
+        def make() -> Trimmed:
+            speeds, balance_x = np.broadcast_arrays(speed, points[:, None])
+            return trim(frame.aircraft, replace(load, balance_x=balance_x), speed=speeds)
 
         key = (_flight_key(inputs), brief.landing_speed_m_s, brief.cruise_speed_m_s, balance)
         return self._memo.get("trim curve", key, make)
@@ -311,14 +311,13 @@ def _balance_result(
     aircraft: Aircraft,
     cruise: Cruise,
     landing: LandingFlight,
-    curve: tuple[Trimmed, Trimmed] | None,
+    curve: Trimmed | None,
 ) -> BalanceResult:
     balance, propulsion = inputs.balance, inputs.propulsion
     margin = 100.0 * cruise.stability.static_margin - propulsion.propeller_share_percent
     empty = np.empty(0)
-    trust = np.empty(0, dtype=np.uint8)
-    if curve is not None:
-        trust = np.maximum(*(flight_trust(trimmed.state) for trimmed in curve))
+    nominal, forward = (empty, empty) if curve is None else np.degrees(curve.elevator)
+    no_trust = np.empty(0, dtype=np.uint8)
     return BalanceResult(
         neutral_point_percent=balance.balance_percent + margin,
         balance_percent=balance.balance_percent,
@@ -332,8 +331,8 @@ def _balance_result(
         elevator_landing_forward_deg=float(np.degrees(landing.flight.elevator)),
         elevator_travel_deg=inputs.tail.elevator_travel_deg,
         tail_lift_cruise_n=float(cruise.flight.trimmed.tail_lift),
-        speed_m_s=empty if curve is None else curve[0].speed,
-        elevator_nominal_deg=empty if curve is None else np.degrees(curve[0].elevator),
-        elevator_forward_deg=empty if curve is None else np.degrees(curve[1].elevator),
-        trust=trust,
+        speed_m_s=empty if curve is None else curve.speed[0],
+        elevator_nominal_deg=nominal,
+        elevator_forward_deg=forward,
+        trust=no_trust if curve is None else flight_trust(curve.state).max(axis=0),
     )

@@ -41,14 +41,13 @@ class Load:
 
     Fields
     ------
-    force : float or ndarray, shape (...)
-        Load factor times weight [N]; an array loads each case of a batch by itself.
+    force, balance_x : float or ndarray, shape (...)
+        Load factor times weight [N], and balance point behind the wing root's leading
+        edge [m]; an array loads or balances each case of a batch by itself.
     density : float
         [kg/m3]
     kinematic_viscosity : float
         [m2/s]
-    balance_x : float
-        Balance point behind the wing root's leading edge [m].
 
     Notes
     -----
@@ -59,10 +58,10 @@ class Load:
     force: float | FloatArray
     density: float
     kinematic_viscosity: float
-    balance_x: float
+    balance_x: float | FloatArray
 
     def case(self, index: int) -> Load:
-        """What one case of a batch carries; all carry the same unless `force` is an array.
+        """What one case of a batch carries and where it balances.
 
         Parameters
         ----------
@@ -72,7 +71,12 @@ class Load:
         -------
         Load
         """
-        return self if np.ndim(self.force) == 0 else replace(self, force=self.forces[index])
+        force, balance = np.asarray(self.force), np.asarray(self.balance_x)
+        return replace(
+            self,
+            force=force[index] if force.ndim else self.force,
+            balance_x=balance[index] if balance.ndim else self.balance_x,
+        )
 
     @property
     def forces(self) -> FloatArray:
@@ -308,7 +312,8 @@ class Problem:
         lattice, field, guess = self.aircraft.lattice, at.flow.influence, at.guess
         cosine, sine = np.cos(guess.angle)[..., None], np.sin(guess.angle)[..., None]
         strength = guess.circulation
-        arm_x, arm_z = lattice.point[..., 0] - self.load.balance_x, lattice.point[..., 2]
+        about_x = np.asarray(self.load.balance_x)[..., None]
+        arm_x, arm_z = lattice.point[..., 0] - about_x, lattice.point[..., 2]
         # d/dg_j of sum_i w_i g_i (own_i(g)), own_i = base_i + sum_j K_ij g_j, for the
         # weights w of lift and of moment.
         own_x, own_z = _own_force(lattice.segment[..., 1], field, guess)

@@ -141,7 +141,7 @@ def pitching_moment(
     drag: FloatArray,
     moment: FloatArray,
     angle_of_attack: FloatArray,
-    about_x: float,
+    about_x: float | FloatArray,
     about_z: float = 0.0,
 ) -> FloatArray:
     """Nose-up moment of every station about a point of the plane of symmetry.
@@ -155,7 +155,8 @@ def pitching_moment(
         the streamwise chord [-].
     angle_of_attack : ndarray, shape (...)
         [rad]
-    about_x, about_z : float
+    about_x : float or ndarray, shape (...)
+    about_z : float
         The point [m].
 
     Returns
@@ -168,5 +169,6 @@ def pitching_moment(
     along_x = forces.along_x + profile * np.cos(angle_of_attack)[..., None]
     along_z = forces.along_z + profile * np.sin(angle_of_attack)[..., None]
     own = 2.0 * moment * lattice.chord * lattice.strip_area * lattice.normal[..., 2]
-    arm_x, arm_z = lattice.point[..., 0] - about_x, lattice.point[..., 2] - about_z
+    arm_x = lattice.point[..., 0] - np.asarray(about_x)[..., None]
+    arm_z = lattice.point[..., 2] - about_z
     return np.asarray(arm_z * along_x - arm_x * along_z + own)

@@ -59,12 +59,12 @@ class Influence:
     onset: FloatArray
     onset_slope: FloatArray
 
-    def case(self, index: int) -> Influence:
-        """One case of a batch along its first axis.
+    def case(self, index: int | slice) -> Influence:
+        """One case of a batch along its first axis, or some.
 
         Parameters
         ----------
-        index : int
+        index : int or slice
 
         Returns
         -------

@@ -27,7 +27,7 @@ LARGEST_ANGLE_STEP = np.radians(3.0)
 TOLERANCE = 1e-10
 """Largest residual over the mean chord at which a solution counts as found [-]."""
 
-MOST_ITERATIONS = 40
+MOST_ITERATIONS = 25
 
 
 @dataclass(frozen=True, eq=False)

@@ -159,7 +159,9 @@ class Branch:
     converged: NDArray[np.bool_]
 
 
-def follow(flow_at: Callable[[float], Flow], angles: FloatArray) -> Branch:
+def follow(
+    flow_at: Callable[[float], Flow], angles: FloatArray, *, start: FloatArray | None = None
+) -> Branch:
     """Follow one branch of solutions from the lowest angle upwards.
 
     Parameters
@@ -167,7 +169,9 @@ def follow(flow_at: Callable[[float], Flow], angles: FloatArray) -> Branch:
     flow_at : callable
         From an angle of attack [rad] to its single :class:`Flow`.
     angles : ndarray, shape (k,)
-        Ascending, the first one unstalled [rad].
+        Ascending, the first one unstalled or next to `start` [rad].
+    start : ndarray, shape (n,), optional
+        Circulations at a neighbouring lower angle [m].
 
     Returns
     -------
@@ -181,7 +185,6 @@ def follow(flow_at: Callable[[float], Flow], angles: FloatArray) -> Branch:
     of the next.
     """
     states: list[Loading] = []
-    start: FloatArray | None = None
     for angle in angles:
         state = solve(flow_at(float(angle)), float(angle), start=start)
         if bool(state.converged):

@@ -82,6 +82,18 @@ def test_a_batch_is_its_single_flights():
         assert float(together.elevator[index]) == pytest.approx(float(alone.elevator), abs=1e-4)
 
 
+def test_each_case_of_a_batch_may_balance_by_itself():
+    aircraft = small_aircraft()
+    points = np.array([aircraft.position(share) for share in (0.2, 0.3, 0.4)])
+    together = trim(
+        aircraft, dataclasses.replace(load(aircraft), balance_x=points), speed=np.full(3, 15.0)
+    )
+    for index, share in enumerate((0.2, 0.3, 0.4)):
+        alone = trim(aircraft, load(aircraft, balance=share), speed=15.0)
+        assert float(together.elevator[index]) == pytest.approx(float(alone.elevator), abs=1e-4)
+        assert float(together.case(index).load.balance_x) == points[index]
+
+
 def test_the_core_of_the_wake_does_not_decide_the_trim():
     from solver.wing import influence as module
 
