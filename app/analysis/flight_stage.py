@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass, replace
+from functools import cached_property
 
 import numpy as np
 from numpy.typing import NDArray
@@ -46,7 +47,7 @@ class Cruise:
     power: tuple[float, float, float]
     drive: Drive
 
-    @property
+    @cached_property
     def flight(self) -> LevelFlight:
         """The nominal one."""
         return self.flights.case(NOMINAL)

@@ -3,11 +3,13 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from functools import cached_property
 
 import numpy as np
 
 from app.analysis.flight_stage import TRUST_WORDS, flight_trust, span_result
-from app.analysis.results import LandingResult, SpanResult, StationRisk, Trust, Verdict
+from app.analysis.results import LandingResult, Trust
+from app.analysis.risk import station_risks
 from app.inputs import BriefInputs
 from solver.aircraft.configuration import Aircraft
 from solver.aircraft.landing import (
@@ -17,21 +19,12 @@ from solver.aircraft.landing import (
     speed_margins,
 )
 from solver.aircraft.trim import Trimmed
-from solver.section.packed import HELD, HIGH, LOW, NOMINAL, PackedPolars
+from solver.section.packed import HELD, HIGH, LOW, NOMINAL
 
 NAN = float("nan")
 
-PLACES = (("root", 0.0), ("quarter", 0.25), ("middle", 0.5), ("three quarters", 0.75), ("tip", 1.0))
 AILERON_FROM = 0.6
 """Share of the half-span outboard of which ailerons usually begin (common practice, no source)."""
-
-CRITICAL_REYNOLDS = 70e3
-"""Below it a smooth section may not reattach (B. H. Carmichael, NASA CR 165803, 1981,
-read second-hand)."""
-
-DRAG_RISE = 2.0
-"""Section drag over that at high Reynolds number from which a go-around is in doubt
-(our choice)."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -50,12 +43,12 @@ class LandingFlight:
     flight: Trimmed
     onset: StallOnset
 
-    @property
+    @cached_property
     def nominal(self) -> StallOnset:
         """The nominal onset as a single state."""
         return self.onset.case(NOMINAL)
 
-    @property
+    @cached_property
     def high_reynolds(self) -> StallOnset:
         """The counterfactual onset as a single state."""
         return self.onset.case(HELD)
@@ -152,7 +145,7 @@ def landing_result(
         counterfactual=counterfactual,
         landing_span=landing_span,
         onset_span=span_result("onset of stall", nominal.trimmed.state, aircraft),
-        risks=station_risks(landing_span, solved, aircraft),
+        risks=station_risks(landing_span, solved.flight.state, aircraft),
         sentences=_sentences(brief, left, onset_words(start, end)) if found else (),
         status=TRUST_WORDS[trust],
         trust=trust,
@@ -186,103 +179,3 @@ def _sentences(brief: BriefInputs, left: SpeedMargins, where: str) -> tuple[str,
         f"A level turn of {np.degrees(left.bank):.0f}° of bank, or a sharp-edged upward gust of "
         f"{left.gust:.1f} m/s (its lag left out), would use up the margin.",
     )
-
-
-def station_risks(
-    span: SpanResult, solved: LandingFlight, aircraft: Aircraft
-) -> tuple[StationRisk, ...]:
-    """Low-Reynolds-number risk at five places of the half-wing, with the reason.
-
-    Parameters
-    ----------
-    span : SpanResult
-        At landing speed.
-    solved : LandingFlight
-    aircraft : Aircraft
-    """
-    half_span = 0.5 * float(np.asarray(aircraft.wing.span))
-    return tuple(
-        _station_risk(name, int(np.argmin(np.abs(span.y_m - share * half_span))), span, solved)
-        for name, share in PLACES
-    )
-
-
-Concern = tuple[Verdict, str]
-
-
-def _station_risk(name: str, index: int, span: SpanResult, solved: LandingFlight) -> StationRisk:
-    polars = solved.flight.state.flow.polars
-    section = int(polars.first[index] if polars.weight[index] < 0.5 else polars.second[index])
-    reynolds = float(span.reynolds[index])
-    concerns = (
-        *_limit_concerns(polars.packed, reynolds, section),
-        *_room_concerns(span, index),
-        *_data_concerns(polars.packed, span, index, section),
-        *_drag_concerns(solved, index, reynolds, section),
-    )
-    order = {Verdict.PASS: 0, Verdict.WATCH: 1, Verdict.FAIL: 2}
-    return StationRisk(
-        place=name,
-        y_m=float(span.y_m[index]),
-        reynolds=reynolds,
-        level=max((level for level, _ in concerns), key=order.__getitem__, default=Verdict.PASS),
-        reason="; ".join(text for _, text in concerns) or "none found",
-    )
-
-
-def _limit_concerns(packed: PackedPolars, reynolds: float, section: int) -> list[Concern]:
-    """How the section's own largest lift behaves at 10 % less speed."""
-    slower = 0.9 * reynolds
-    if bool(np.any(packed.in_unknown(np.array([reynolds, slower]), section=section))):
-        return [(Verdict.FAIL, "largest lift jumps between two runs here: not known")]
-    limits = packed.limits(np.array([slower, reynolds]), band=NOMINAL, section=section)
-    loss = 1.0 - float(limits.largest_lift[0] / limits.largest_lift[1])
-    if loss <= 0.05:
-        return []
-    level = Verdict.FAIL if loss > 0.15 else Verdict.WATCH
-    return [(level, f"10 % less speed costs {100 * loss:.0f} % of largest lift")]
-
-
-def _room_concerns(span: SpanResult, index: int) -> list[Concern]:
-    if span.room[index] < 0.0:
-        return [(Verdict.FAIL, "past its largest lift")]
-    if span.knee_room_deg[index] < 0.0:
-        return [(Verdict.WATCH, "past the knee of its lift curve")]
-    return []
-
-
-def _data_concerns(
-    packed: PackedPolars, span: SpanResult, index: int, section: int
-) -> list[Concern]:
-    concerns = []
-    if packed.estimated[section]:
-        concerns.append((Verdict.WATCH, "its polar is estimated, not measured"))
-    elif span.trust[index] == Trust.EXTRAPOLATED:
-        concerns.append((Verdict.WATCH, "outside the Reynolds numbers or angles measured"))
-    if span.reynolds[index] < CRITICAL_REYNOLDS:
-        concerns.append(
-            (
-                Verdict.WATCH,
-                f"below about {CRITICAL_REYNOLDS:,.0f} a smooth section may not reattach",
-            )
-        )
-    return concerns
-
-
-def _drag_concerns(
-    solved: LandingFlight, index: int, reynolds: float, section: int
-) -> list[Concern]:
-    rise = _drag_rise(solved, index, reynolds, section)
-    if rise <= DRAG_RISE:
-        return []
-    text = f"drag is {rise:.1f} times that at high Reynolds number: the go-around suffers"
-    return [(Verdict.WATCH, text)]
-
-
-def _drag_rise(solved: LandingFlight, index: int, reynolds: float, section: int) -> float:
-    """Section drag at landing over that at its highest tabled Reynolds number."""
-    packed = solved.flight.state.flow.polars.packed
-    angle = float(solved.flight.state.section_angle[index])
-    here = packed.evaluate(angle, reynolds, band=NOMINAL, section=section)
-    high = packed.evaluate(angle, packed.highest_reynolds[section], band=NOMINAL, section=section)
-    return float(here.drag) / float(high.drag)

@@ -9,7 +9,7 @@ from typing import TypeVar
 
 Found = TypeVar("Found")
 
-KEPT = 12
+KEPT = 32
 """Results kept for each stage: a few sliders back and forth."""
 
 

@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import dataclass
+from functools import cached_property, partial
 
 import numpy as np
 from numpy.typing import NDArray
@@ -13,6 +15,7 @@ from solver.aircraft.trim import Trimmed
 from solver.errors import InputError
 from solver.section.estimate import estimate_polar
 from solver.section.geometry import (
+    CamberLine,
     Outline,
     camber_line,
     leading_edge_radius,
@@ -31,7 +34,8 @@ FloatArray = NDArray[np.float64]
 ROLES = ("root", "tip", "tail")
 SHOWN_FROM, SHOWN_TO, SHOWN_STEP = -10.0, 18.0, 0.5
 LIMIT_POINTS = 80
-MOST_CURVES = 6
+
+Remembered = Callable[[tuple[int, float], Callable[[], PolarCurve]], PolarCurve]
 
 
 @dataclass(frozen=True, eq=False)
@@ -43,10 +47,25 @@ class SectionData:
     thin: ThinAirfoil
     polar: Polar
 
-    @property
+    @cached_property
     def thickness(self) -> float:
         """Largest thickness over chord [-]."""
         return float(max_thickness(self.outline).value)
+
+    @cached_property
+    def camber(self) -> float:
+        """Largest camber over chord [-]."""
+        return float(max_camber(self.outline).value)
+
+    @cached_property
+    def camber_line(self) -> CamberLine:
+        """Line midway between the surfaces."""
+        return camber_line(self.outline)
+
+    @cached_property
+    def nose_radius(self) -> float:
+        """Radius of the leading edge over chord [-]."""
+        return leading_edge_radius(self.outline)
 
 
 def section_data(source: SectionSource) -> SectionData:
@@ -86,7 +105,11 @@ def section_data(source: SectionSource) -> SectionData:
 
 
 def section_results(
-    sections: tuple[SectionData, SectionData, SectionData], cruise: Trimmed, landing: Trimmed
+    sections: tuple[SectionData, SectionData, SectionData],
+    cruise: Trimmed,
+    landing: Trimmed,
+    *,
+    remembered: Remembered,
 ) -> tuple[SectionResult, ...]:
     """What the Section sheet shows of each different section.
 
@@ -96,6 +119,9 @@ def section_results(
         Of wing root, wing tip and tail.
     cruise, landing : Trimmed
         Single flights, for the Reynolds numbers met.
+    remembered : callable
+        From a key and a function to what the function gave for that key: curves are
+        drawn at rounded Reynolds numbers, so most steps of a slider draw none.
     """
     polars = landing.state.flow.polars
     shown = []
@@ -115,6 +141,7 @@ def section_results(
                 index=index,
                 landing_reynolds=ranges[0],
                 cruise_reynolds=ranges[1],
+                remembered=remembered,
             )
         )
     return tuple(shown)
@@ -128,6 +155,7 @@ def section_result(
     index: int,
     landing_reynolds: tuple[float, float],
     cruise_reynolds: tuple[float, float],
+    remembered: Remembered,
 ) -> SectionResult:
     """What the Section sheet shows of one section.
 
@@ -141,8 +169,10 @@ def section_result(
         Its place among the packed sections.
     landing_reynolds, cruise_reynolds : tuple of float
         Smallest and largest Reynolds number that it meets [-].
+    remembered : callable
+        As for :func:`section_results`.
     """
-    outline, line = data.outline, camber_line(data.outline)
+    outline, line = data.outline, data.camber_line
     limits = _limits_over_reynolds(packed, index, landing_reynolds, cruise_reynolds)
     tables = data.source.tables
     return SectionResult(
@@ -155,11 +185,11 @@ def section_result(
         camber_x=line.x,
         camber_y=line.y,
         thickness_percent=100.0 * data.thickness,
-        camber_percent=100.0 * float(max_camber(outline).value),
-        leading_edge_radius_percent=100.0 * leading_edge_radius(outline),
+        camber_percent=100.0 * data.camber,
+        leading_edge_radius_percent=100.0 * data.nose_radius,
         zero_lift_angle_deg=float(np.degrees(data.thin.zero_lift_angle)),
         moment_coefficient=data.thin.moment_quarter_chord,
-        curves=_curves(data, packed, index, landing_reynolds, cruise_reynolds),
+        curves=_curves(data, packed, index, (*landing_reynolds, *cruise_reynolds), remembered),
         points=_points(tables.lift + tables.drag) if tables is not None else (),
         unknown_reynolds=data.polar.unknown,
         landing_reynolds=landing_reynolds,
@@ -199,29 +229,31 @@ def _curves(
     data: SectionData,
     packed: PackedPolars,
     index: int,
-    landing: tuple[float, float],
-    cruise: tuple[float, float],
+    met: tuple[float, ...],
+    remembered: Remembered,
 ) -> tuple[PolarCurve, ...]:
-    """Curves at the Reynolds numbers that this wing meets."""
-    chosen = sorted({round(value, -3) for value in (*landing, *cruise)})[:MOST_CURVES]
+    """Curves at the Reynolds numbers that this wing meets, to two figures."""
+    chosen = sorted({float(f"{reynolds:.1e}") for reynolds in met})
+    return tuple(
+        remembered((index, reynolds), partial(_curve, data, packed, index, reynolds))
+        for reynolds in chosen
+    )
+
+
+def _curve(data: SectionData, packed: PackedPolars, index: int, reynolds: float) -> PolarCurve:
     angle_deg = np.arange(SHOWN_FROM, SHOWN_TO + 0.5 * SHOWN_STEP, SHOWN_STEP)
     angle = np.radians(angle_deg)
-    curves = []
-    for reynolds in chosen:
-        at = np.full_like(angle, reynolds)
-        values = packed.evaluate(angle, at, band=NOMINAL, section=index)
-        curves.append(
-            PolarCurve(
-                reynolds=reynolds,
-                angle_deg=angle_deg,
-                lift=values.lift,
-                drag=values.drag,
-                moment=values.moment,
-                trust=packed.trust(angle, at, section=index),
-                origin=_origins(data.polar, angle, reynolds),
-            )
-        )
-    return tuple(curves)
+    at = np.full_like(angle, reynolds)
+    values = packed.evaluate(angle, at, band=NOMINAL, section=index)
+    return PolarCurve(
+        reynolds=reynolds,
+        angle_deg=angle_deg,
+        lift=values.lift,
+        drag=values.drag,
+        moment=values.moment,
+        trust=packed.trust(angle, at, section=index),
+        origin=_origins(data.polar, angle, reynolds),
+    )
 
 
 def _origins(polar: Polar, angle: FloatArray, reynolds: float) -> NDArray[np.uint8]:

@@ -10,6 +10,7 @@ shows are made when that sheet asks for them.
 from __future__ import annotations
 
 import time
+from collections.abc import Callable
 from dataclasses import dataclass, replace
 
 import numpy as np
@@ -28,7 +29,9 @@ from app.analysis.results import (
     AirResult,
     BalanceResult,
     LiftCurveResult,
+    PolarCurve,
     Results,
+    SectionResult,
     SweepResult,
 )
 from app.analysis.section_stage import SectionData, section_data, section_results
@@ -107,7 +110,7 @@ class Analysis:
             name=inputs.name,
             inputs=inputs.values(),
             air=_air_result(inputs, air),
-            sections=section_results(frame.sections, cruise.flight.trimmed, landing.flight),
+            sections=self._sections(inputs, frame, cruise, landing),
             planform=planform_result(
                 inputs,
                 frame.aircraft,
@@ -135,6 +138,16 @@ class Analysis:
     def _section(self, source: SectionSource) -> SectionData:
         return self._memo.get("section", source, lambda: section_data(source))
 
+    def _sections(
+        self, inputs: Inputs, frame: Airframe, cruise: Cruise, landing: LandingFlight
+    ) -> tuple[SectionResult, ...]:
+        def remembered(which: tuple[int, float], make: Callable[[], PolarCurve]) -> PolarCurve:
+            return self._memo.get("curve", (_packed_key(inputs), which), make)
+
+        return section_results(
+            frame.sections, cruise.flight.trimmed, landing.flight, remembered=remembered
+        )
+
     def _packed(self, inputs: Inputs) -> PackedPolars:
         wing = inputs.wing
 
@@ -146,8 +159,7 @@ class Analysis:
                 largest_lift_debit=surface.largest_lift_debit,
             )
 
-        key = (inputs.sections, wing.finish, wing.build_drag_factor)
-        return self._memo.get("packed", key, make)
+        return self._memo.get("packed", _packed_key(inputs), make)
 
     def airframe(self, inputs: Inputs) -> Airframe:
         """Build the aircraft of a scenario and the sections it is made of."""
@@ -255,6 +267,11 @@ class Analysis:
 
         key = (_flight_key(inputs), brief.landing_speed_m_s, brief.cruise_speed_m_s, balance)
         return self._memo.get("trim curve", key, make)
+
+
+def _packed_key(inputs: Inputs) -> tuple[object, ...]:
+    """Everything the packed sections depend on."""
+    return (inputs.sections, inputs.wing.finish, inputs.wing.build_drag_factor)
 
 
 def _frame_key(inputs: Inputs) -> tuple[object, ...]:
