@@ -8,6 +8,7 @@ attack. Targets are a speed, an angle, or the knee of the first section to stall
 from __future__ import annotations
 
 from dataclasses import dataclass, replace
+from functools import cached_property
 from typing import Protocol
 
 import numpy as np
@@ -111,6 +112,15 @@ class At:
     forces: StationForces
     speed: FloatArray
 
+    @cached_property
+    def first_to_stall(self) -> tuple[NDArray[np.intp], FloatArray]:
+        """The wing station with the least angle left to its knee, and what is left [rad]."""
+        flow = self.flow
+        knee = flow.polars.limits(flow.reynolds(), band=flow.band).knee_angle
+        left = np.where(flow.lattice.surface == WING, knee - self.equations.angle, np.inf)
+        first = np.argmin(left, axis=-1)[..., None]
+        return first, np.take_along_axis(left, first, axis=-1)[..., 0]
+
 
 class Target(Protocol):
     """What sets the angle of attack."""
@@ -187,21 +197,13 @@ class AtKnee:
         """Speed at which the lift carries the load [m/s]."""
         return _lift_speed(problem, lift_area)
 
-    def _first(self, at: At) -> tuple[NDArray[np.intp], FloatArray]:
-        """The wing station with the least angle left, and what is left [rad]."""
-        flow = at.flow
-        knee = flow.polars.limits(flow.reynolds(), band=flow.band).knee_angle
-        left = np.where(flow.lattice.surface == WING, knee - at.equations.angle, np.inf)
-        first = np.argmin(left, axis=-1)[..., None]
-        return first, np.take_along_axis(left, first, axis=-1)[..., 0]
-
     def gap(self, problem: Problem, at: At) -> FloatArray:
         """Angle past the knee, negative before it [rad]."""
-        return -self._first(at)[1]
+        return -at.first_to_stall[1]
 
     def row(self, problem: Problem, at: At, lift_row: FloatArray) -> FloatArray:
         """Derivatives of that station's angle."""
-        first, _ = self._first(at)
+        first, _ = at.first_to_stall
         flow = at.flow
         cosine = np.broadcast_to(flow.lattice.cos_sweep, at.equations.angle.shape)
         turn = np.take_along_axis(1.0 / cosine, first, axis=-1)

@@ -6,7 +6,7 @@ See :mod:`solver.section.hermite` for the order of the two slopes.
 from __future__ import annotations
 
 from dataclasses import dataclass
-from typing import Final
+from typing import Any, Final
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
@@ -155,9 +155,9 @@ class PackedPolars:
         first = np.asarray(band, dtype=np.intp) * len(self.names) + np.asarray(section)
         cell = (first * (self.angle.size - 1) + row) * (self.reynolds.size - 1) + column
         shape = np.broadcast_shapes(cell.shape, place.shape)
-        flat = np.broadcast_to(cell, shape).reshape(-1)
-        u = np.broadcast_to(place - row, shape).reshape(-1, 1)
-        v = np.broadcast_to(v, shape).reshape(-1, 1)
+        flat = _spread(cell, shape).reshape(-1)
+        u = _spread(place - row, shape).reshape(-1, 1)
+        v = _spread(v, shape).reshape(-1, 1)
         c = self.cells.take(flat, axis=0)
         t = ((c[:, 36:] * v + c[:, 24:36]) * v + c[:, 12:24]) * v + c[:, :12]
         c0, c1, c2, c3 = t[:, :3], t[:, 3:6], t[:, 6:9], t[:, 9:]
@@ -194,9 +194,9 @@ class PackedPolars:
             Of the broadcast shape of all three.
         """
         column, v = self._along_reynolds(np.asarray(reynolds, dtype=np.float64))
-        band, section, column, v = np.broadcast_arrays(band, section, column, v)
-        c = self.limit_lines[band, section, column]
-        w = v[..., None]
+        bands, sections = np.asarray(band, dtype=np.intp), np.asarray(section, dtype=np.intp)
+        c = self.limit_lines[bands, sections, column]
+        w = np.asarray(v)[..., None]
         found = ((c[..., 3] * w + c[..., 2]) * w + c[..., 1]) * w + c[..., 0]
         return SectionLimits(
             largest_lift=found[..., 0], knee_angle=found[..., 1], peak_angle=found[..., 2]
@@ -256,6 +256,11 @@ class PackedPolars:
         )
         low, high = self.reynolds[column], self.reynolds[column + 1]
         return column, np.log(held / low) / np.log(high / low)
+
+
+def _spread(values: NDArray[Any], shape: tuple[int, ...]) -> NDArray[Any]:
+    """Broadcast only where it is needed, which in a kernel it seldom is."""
+    return values if values.shape == shape else np.broadcast_to(values, shape)
 
 
 def _soft_stop(angle: FloatArray) -> tuple[FloatArray, FloatArray | None]:
