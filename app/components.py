@@ -70,9 +70,10 @@ class FieldColumn(Part):
 
 
 class Words(Part):
-    """Sentences, facts and tables."""
+    """Sentences, facts and tables; behind a heading to open where `fold` names one."""
 
     blocks = param.List(default=[])
+    fold = param.String(default="")
     _esm = _script("words.js")
 
 

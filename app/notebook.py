@@ -38,6 +38,7 @@ LOG = logging.getLogger(__name__)
 ADDRESS = "127.0.0.1"
 TITLE = "Halfspan"
 SHEETS: tuple[type[Sheet], ...] = (SectionSheet, WingSheet, BalanceSheet, SpeedSheet, LandingSheet)
+SHEETS_BY_NAME = {kind.name: kind for kind in SHEETS}
 FIRST = WingSheet.name
 WRONG = (
     "Something inside went wrong with that change, and it was taken back: "
@@ -191,7 +192,10 @@ class Session:
     def _show_fields(self) -> None:
         self.column.state = {
             "values": self.scenario.values(),
-            "refusals": {name: text for name, (_, text) in self.refused.items()},
+            "refusals": {
+                name: {"value": value, "text": text}
+                for name, (value, text) in self.refused.items()
+            },
         }
 
     def _show_strip(self) -> None:
@@ -282,7 +286,7 @@ def serve(
     port: int | None = None,
     open_browser: bool = True,
     ready: Callable[[str], None] | None = None,
-    analysis: Callable[[], Solves] | None = None,
+    analysis: Solves | None = None,
 ) -> None:
     """Serve the notebook on this computer until it is stopped.
 
@@ -296,8 +300,8 @@ def serve(
         Open the system's browser on it.
     ready : callable, optional
         Called with the address once the server listens.
-    analysis : callable, optional
-        Makes the analysis of each session; the real one unless given.
+    analysis : Solves, optional
+        Shared by all sessions, since it remembers; the real one unless given.
 
     Raises
     ------
@@ -315,13 +319,15 @@ def serve(
     if analysis is None:
         from app.analysis.stages import Analysis
 
-        analysis = Analysis
+        analysis = Analysis()
     server = make_server(opened, port=port or 0, analysis=analysis)
     address = f"http://{ADDRESS}:{server.port}/"
     if ready is not None:
         ready(address)
     if open_browser:
         server.io_loop.add_callback(webbrowser.open, address)
+    # While the browser starts: its first page then finds polars and wing solved.
+    server.io_loop.add_callback(_solve_ahead, opened, analysis)
     try:
         server.io_loop.start()
     except KeyboardInterrupt:
@@ -330,7 +336,15 @@ def serve(
         server.stop()
 
 
-def make_server(scenario: Scenario, *, port: int, analysis: Callable[[], Solves]) -> Server:
+def _solve_ahead(scenario: Scenario, analysis: Solves) -> None:
+    try:
+        analysis.run(scenario.freeze(), want=SHEETS_BY_NAME[FIRST].want)
+    except Exception:
+        # The page will run into it too, and say it.
+        LOG.exception("solving ahead failed")
+
+
+def make_server(scenario: Scenario, *, port: int, analysis: Solves) -> Server:
     """Make a server that listens but does not yet answer.
 
     Parameters
@@ -339,8 +353,8 @@ def make_server(scenario: Scenario, *, port: int, analysis: Callable[[], Solves]
         Every session begins with a copy of it.
     port : int
         Port on 127.0.0.1; 0 for a free one.
-    analysis : callable
-        Makes the analysis of each session.
+    analysis : Solves
+        Shared by all sessions.
 
     Returns
     -------
@@ -356,7 +370,7 @@ def make_server(scenario: Scenario, *, port: int, analysis: Callable[[], Solves]
 
     def session() -> pn.viewable.Viewable:
         curdoc().theme = theme()
-        return page(own_copy(scenario), analysis())
+        return page(own_copy(scenario), analysis)
 
     port = port or _free_port()
     server = pn.serve(  # type: ignore[no-untyped-call]

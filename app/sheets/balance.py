@@ -10,6 +10,7 @@ from app.analysis.results import BalanceResult, Results
 from app.figures import words
 from app.figures.balance_plots import ChordRuler, ElevatorOverSpeed
 from app.figures.planform import PlanformDrawing
+from app.sheets.numbers import balance_numbers
 from app.sheets.sheet import FieldGroup, Sheet, facts, note, table, title, words_card
 
 NOT_GIVEN = "not given"
@@ -59,6 +60,10 @@ class BalanceSheet(Sheet):
             self.shares,
             self.trim,
         ]
+
+    def numbers(self, results: Results) -> list[dict[str, object]]:
+        """Give the numbers behind the plots."""
+        return balance_numbers(results.balance)
 
     def feed(self, results: Results) -> None:
         """Show results."""

@@ -10,6 +10,7 @@ from app.analysis.results import LandingResult, Results
 from app.figures import words
 from app.figures.landing_plots import SpeedsOnOneAxis
 from app.figures.span_plots import LocalLift, ReynoldsAlongSpan, RoomAlongSpan
+from app.sheets.numbers import span_numbers
 from app.sheets.sheet import (
     FIELD,
     LIMITS,
@@ -46,6 +47,13 @@ class LandingSheet(Sheet):
             self.card(ReynoldsAlongSpan(self.station, ("landing",))),
             self.risks,
             self.margins,
+        ]
+
+    def numbers(self, results: Results) -> list[dict[str, object]]:
+        """Give the numbers behind the plots."""
+        return [
+            *span_numbers(results.landing.landing_span, "at landing"),
+            *span_numbers(results.landing.onset_span, "at the onset of stall"),
         ]
 
     def feed(self, results: Results) -> None:

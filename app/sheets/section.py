@@ -22,6 +22,7 @@ from app.figures.section_plots import (
     run_marker,
 )
 from app.figures.station import Station
+from app.sheets.numbers import section_numbers
 from app.sheets.sheet import FieldGroup, Sheet, facts, note, sentences, title, words_card
 
 TRUST_KEY = "Solid: inside the data. Dashed: extrapolated. Dotted: beyond stall, indicative only."
@@ -37,7 +38,6 @@ class SectionSheet(Sheet):
         super().__init__(station)
         self.chosen = 0
         self.only: float = ALL
-        self.results: Results | None = None
 
     def build(self) -> Sequence[pn.viewable.Viewable]:
         """Make figures and words."""
@@ -60,9 +60,14 @@ class SectionSheet(Sheet):
             self.findings,
         ]
 
+    def numbers(self, results: Results) -> list[dict[str, object]]:
+        """Give the numbers behind the plots, of the curve brought forward or the first."""
+        section = results.sections[self.chosen]
+        curves = [curve for curve in section.curves if curve.reynolds == self.only]
+        return section_numbers(section, next(iter([*curves, *section.curves]), None))
+
     def feed(self, results: Results) -> None:
         """Show results."""
-        self.results = results
         if self.chosen >= len(results.sections):
             self.chosen, self.only = 0, ALL
         section = results.sections[self.chosen]
@@ -84,13 +89,15 @@ class SectionSheet(Sheet):
 
     def _choose_section(self, message: Message) -> None:
         self.chosen, self.only = int(message["choose"]), ALL
-        if self.results is not None:
-            self.feed(self.results)
+        self._again()
 
     def _choose_level(self, message: Message) -> None:
         self.only = float(message["choose"])
+        self._again()
+
+    def _again(self) -> None:
         if self.results is not None:
-            self.feed(self.results)
+            self.update(self.results)
 
 
 def place_of(section: SectionResult, results: Results) -> str:

@@ -8,7 +8,7 @@ from dataclasses import dataclass
 import panel as pn
 
 from app.analysis.results import Results
-from app.components import Words
+from app.components import Message, Words
 from app.figures.look import static_text
 from app.figures.plot import Plot
 from app.figures.station import Station
@@ -70,6 +70,14 @@ class Sheet:
     def __init__(self, station: Station) -> None:
         self.station = station
         self.plots: list[Plot] = []
+        self.results: Results | None = None
+        self.folded = Words(
+            self._fold,
+            fold="Numbers behind the plots",
+            sizing_mode="stretch_width",
+            css_classes=["halfspan-full"],
+        )
+        self.unfolded = False
         self.grid = pn.Column(
             css_classes=["halfspan-sheet"],
             stylesheets=[static_text("layout.css")],
@@ -108,6 +116,30 @@ class Sheet:
         for plot in self.plots:
             plot.update(results)
 
+    def numbers(self, results: Results) -> list[dict[str, object]]:
+        """Give the numbers behind the plots.
+
+        Parameters
+        ----------
+        results : Results
+            With what `want` names.
+
+        Returns
+        -------
+        list of dict
+            Tables for a card of words.
+        """
+        raise NotImplementedError
+
+    def _fold(self, message: Message) -> None:
+        self.unfolded = bool(message["open"])
+        self._feed_numbers()
+
+    def _feed_numbers(self) -> None:
+        # A long table costs as much as all the plots: only where it is looked at.
+        if self.unfolded and self.results is not None:
+            self.folded.blocks = self.numbers(self.results)
+
     def update(self, results: Results) -> None:
         """Feed the sheet, building it first where that has not been done.
 
@@ -117,10 +149,12 @@ class Sheet:
             With what `want` names.
         """
         cards = None if self.built else self.build()
+        self.results = results
         self.feed(results)
+        self._feed_numbers()
         if cards is not None:
             # Filled before it is shown: the browser paints it once.
-            self.grid.objects = list(cards)
+            self.grid.objects = [*cards, self.folded]
 
     def card(self, plot: Plot, *, shape: str = "one") -> pn.viewable.Viewable:
         """Make a card of a figure and feed it from now on.

@@ -16,6 +16,7 @@ from app.figures.speed_plots import (
     CurveOverSpeed,
     DragOverSpeed,
 )
+from app.sheets.numbers import sweep_numbers
 from app.sheets.sheet import FieldGroup, Sheet, facts, note, table, title, words_card
 
 
@@ -50,6 +51,10 @@ class SpeedSheet(Sheet):
             self.parts,
             self.best,
         ]
+
+    def numbers(self, results: Results) -> list[dict[str, object]]:
+        """Give the numbers behind the plots."""
+        return sweep_numbers(results.sweep) if results.sweep is not None else []
 
     def feed(self, results: Results) -> None:
         """Show results."""

@@ -12,6 +12,7 @@ from app.figures.loading import Loading
 from app.figures.planform import PlanformDrawing
 from app.figures.span_plots import LocalLift, ReynoldsAlongSpan
 from app.figures.wing_lift import WingLift
+from app.sheets.numbers import lift_curve_numbers, span_numbers
 from app.sheets.sheet import FieldGroup, Sheet, facts, note, title, words_card
 
 
@@ -45,6 +46,15 @@ class WingSheet(Sheet):
             self.card(Loading(self.station)),
             self.card(WingLift()),
             self.facts,
+        ]
+
+    def numbers(self, results: Results) -> list[dict[str, object]]:
+        """Give the numbers behind the plots."""
+        curve = results.lift_curve
+        return [
+            *span_numbers(results.landing.landing_span, "at landing"),
+            *span_numbers(results.cruise.span, "in cruise"),
+            *(lift_curve_numbers(curve) if curve is not None else []),
         ]
 
     def feed(self, results: Results) -> None:

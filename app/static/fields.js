@@ -24,7 +24,7 @@ class Entry {
     this.column = column
     const id = `field-${field.name}`
     const described = `${id}-help ${id}-error`
-    this.error = node("p", {class: "error", id: `${id}-error`, role: "alert", hidden: true})
+    this.error = node("p", {class: "refusal", id: `${id}-error`, role: "alert", hidden: true})
     this.input = this.makeInput(id, described)
     this.slider = field.kind === "number" ? this.makeSlider(described) : null
     this.element = node("div", {
@@ -119,7 +119,16 @@ class Entry {
 
   // The page's state is shown; what was refused stays where it was typed.
   show(value, refusal) {
-    if (refusal) { this.refuse(refusal); return }
+    if (refusal) {
+      if (this.sent === undefined) {
+        // Drawn anew beside another sheet: the refused value comes back too.
+        this.input.value = String(refusal.value)
+        this.sent = this.input.value
+        if (typeof value === "number") this.place(value)
+      }
+      this.refuse(refusal.text)
+      return
+    }
     const editing = this.element.getRootNode().activeElement === this.input
     const unsent = editing && this.input.value !== this.sent && this.field.kind !== "choice"
     if (unsent && this.sent !== undefined) return

@@ -21,11 +21,15 @@ function cell(value) {
 
 export function render({model}) {
   const root = node("div", {class: "prose"})
+  const sender = new Sender(model)
   const fillRoot = once((blocks) => {
     root.replaceChildren(...blocks.map((block) => MAKE[block.kind](block)))
   })
   const show = () => fillRoot(model.blocks)
   model.on("blocks", show)
   show()
-  return root
+  if (model.fold === "") return root
+  return node("details", {
+    class: "fold", ontoggle: (event) => sender.send({open: event.target.open}),
+  }, node("summary", {}, model.fold), root)
 }

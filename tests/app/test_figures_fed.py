@@ -253,3 +253,28 @@ def test_findings_and_source_reach_the_section_sheet_as_written(good):
     # Plain text goes out; the browser sets it as text (see the browser's tests).
     assert "<script>1</script> & more" in said
     assert "<img src=x>" in said
+
+
+@pytest.mark.parametrize("kind", SHEETS, ids=lambda kind: kind.name)
+def test_numbers_behind_the_plots_are_fed_only_while_open(kind, good):
+    sheet = kind(Station())
+    sheet.station.update(good)
+    sheet.update(good)
+    assert sheet.folded.blocks == []
+    sheet.folded._handle_msg({"open": True, "seq": 1})
+    first = json.dumps(sheet.folded.blocks)
+    assert '"kind": "table"' in first
+    assert not re.search(r"\b(nan|inf|NaN|Infinity)\b", first)
+    sheet.folded._handle_msg({"open": False, "seq": 2})
+    sheet.update(make_results(want=ALL, mass_kg=5.0))
+    assert json.dumps(sheet.folded.blocks) == first
+
+
+def test_a_table_says_which_rows_are_not_trusted(good):
+    sheet = next(kind for kind in SHEETS if kind.name == "Speed and battery")(Station())
+    head, rows = (sheet.numbers(good)[1][part] for part in ("head", "rows"))
+    assert head[-1] == "trust"
+    said = [row[-1] for row in rows]
+    assert said.count("no solution") == int((good.sweep.trust == Trust.NOT_CONVERGED).sum())
+    assert "extrapolated" in said
+    assert all(row[5] == "" for row in rows if row[-1] == "no solution")

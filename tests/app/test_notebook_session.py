@@ -52,7 +52,7 @@ def test_a_value_taken_reaches_scenario_strip_and_plots(session):
 def test_a_value_refused_marks_its_field_and_changes_nothing_else(session, bad):
     runs, plots = len(session.analysis.runs), session.sheets["Wing"].plots[0].outlines.data
     send(session, span_m=bad)
-    text = session.column.state["refusals"]["span_m"]
+    text = session.column.state["refusals"]["span_m"]["text"]
     assert text.startswith("Span must be a number between 0.4 and 8 m; got ")
     assert text.endswith(".")
     assert shown(session, "span_m") == 2.4
@@ -87,7 +87,7 @@ def test_a_refusal_that_still_holds_stands_while_other_fields_change(session):
 def test_a_refusal_by_the_analysis_marks_the_field_and_takes_the_change_back(session):
     session.analysis.error = InputError("root_section", "NACA 9999", "a section that can be drawn")
     send(session, root_section="NACA 9912")
-    assert "a section that can be drawn" in session.column.state["refusals"]["root_section"]
+    assert "a section that can be drawn" in session.column.state["refusals"]["root_section"]["text"]
     assert shown(session, "root_section") == "NACA 2412"
 
 
@@ -231,7 +231,7 @@ def test_the_page_fits_one_document():
 
 
 def test_the_server_listens_on_this_computer_and_for_its_own_page_only():
-    server = notebook.make_server(scenario(), port=0, analysis=SampleAnalysis)
+    server = notebook.make_server(scenario(), port=0, analysis=SampleAnalysis())
     try:
         assert server.address == "127.0.0.1"
         assert server._tornado._websocket_origins == {f"127.0.0.1:{server.port}"}

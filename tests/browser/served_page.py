@@ -44,7 +44,7 @@ def main() -> None:
         sys.stdout.write(f"{address}\n")
         sys.stdout.flush()
 
-    serve(scenario, open_browser=False, ready=ready, analysis=MisbehavingAnalysis)
+    serve(scenario, open_browser=False, ready=ready, analysis=MisbehavingAnalysis())
 
 
 if __name__ == "__main__":

@@ -139,6 +139,11 @@ def test_a_refused_entry_marks_its_field_and_the_page_keeps_the_last_good_state(
     expect(box).to_have_value(text)
     assert page.evaluate(LINE, "Wing: local_lift_landing") == before
     expect(tile(page, "Span")).to_contain_text("2.40")
+    if text == "99":
+        open_sheet(page, "Balance")
+        open_sheet(page, "Wing")
+        expect(error).to_be_visible()
+        expect(box).to_have_value(text)
     give(page, "span_m", "2.4")
     expect(error).to_be_hidden()
     expect(box).not_to_have_attribute("aria-invalid", "true")
@@ -256,8 +261,8 @@ def test_every_plot_of_a_sheet_is_painted_and_the_page_does_not_scroll(page, nam
 def test_every_control_has_a_name_a_unit_and_its_help(page):
     for name in SHEETS:
         open_sheet(page, name)
-        while page.locator("details:not([open]) > summary").count():
-            page.locator("details:not([open]) > summary").first.click()
+        while page.locator(".inputs details:not([open]) > summary").count():
+            page.locator(".inputs details:not([open]) > summary").first.click()
         unnamed = page.evaluate(
             """() => {
               const found = []
@@ -276,6 +281,18 @@ def test_every_control_has_a_name_a_unit_and_its_help(page):
         for field in page.locator(".field").all():
             helped = field.locator(".unseen").inner_text()
             assert "Allowed:" in helped
+
+
+def test_the_numbers_behind_the_plots_open_by_keyboard(page):
+    open_sheet(page, "Balance")
+    fold = page.locator("details.fold:visible")
+    expect(fold.locator("table")).to_have_count(0)
+    fold.locator("summary").focus()
+    page.keyboard.press("Enter")
+    expect(fold.locator("tbody tr").first).to_be_visible()
+    expect(fold.locator("th").first).to_have_text("speed [m/s]")
+    page.keyboard.press("Enter")
+    expect(fold.locator("table")).to_be_hidden()
 
 
 @pytest.mark.parametrize("scheme", ["light", "dark"])
