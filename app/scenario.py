@@ -12,7 +12,7 @@ import math
 import re
 from collections.abc import Mapping
 from contextlib import ExitStack
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from functools import lru_cache
 from numbers import Real
 from pathlib import Path
@@ -47,6 +47,7 @@ __all__ = [
     "Propulsion",
     "Scenario",
     "SectionFiles",
+    "TableFile",
     "Tail",
     "Wing",
     "field_list",
@@ -61,20 +62,42 @@ _NACA_FIVE = re.compile(r"[1-6]([1-5]0|[2-5]1)(0[1-9]|[1-3]\d|40)")
 
 
 @dataclass(frozen=True)
-class SectionFiles:
-    """One section of the scenario: where its tables lie and what they hold.
+class TableFile:
+    """One table of a section: where it lies, and its text.
 
     Parameters
     ----------
-    outline, lift, drag : str
-        Paths relative to the scenario's folder, with forward slashes.
+    path : str
+        Relative to the scenario's folder, with forward slashes.
+    digest : str
+        Sha256 of the text: what the table is, wherever it lies.
+    text : str
+        Word for word, with plain line feeds.
+    """
+
+    path: str
+    digest: str
+    text: str = field(repr=False, compare=False)
+
+    def __str__(self) -> str:
+        return self.path
+
+
+@dataclass(frozen=True)
+class SectionFiles:
+    """One section of the scenario: the files of its tables and what they hold.
+
+    Parameters
+    ----------
+    outline, lift, drag : TableFile
+        The files.
     tables : SectionTables
         What was read from them.
     """
 
-    outline: str
-    lift: str
-    drag: str
+    outline: TableFile
+    lift: TableFile
+    drag: TableFile
     tables: SectionTables
 
 

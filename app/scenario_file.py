@@ -1,9 +1,10 @@
 """Scenarios as TOML files: read with every refusal named, written atomically.
 
-A file holds ``schema = 1``, the tables ``[scenario]``, one for each group of
+A file holds its ``schema``, the tables ``[scenario]``, one for each group of
 fields and one ``[sections."NAME"]`` for each section that has tables. What is
-missing takes its default. What is wrong raises :class:`ScenarioError`, whose
-one sentence names the file, the key, the value and what is allowed.
+missing takes its default; what an older schema wrote is brought to today's
+first. What is wrong raises :class:`ScenarioError`, whose one sentence names the
+file, the key, the value and what is allowed.
 """
 
 from __future__ import annotations
@@ -12,11 +13,10 @@ import re
 import stat
 import tomllib
 from collections.abc import Iterator, Mapping
-from pathlib import Path, PurePosixPath
+from pathlib import Path
 from typing import Any
 
-from app.inputs import SectionTables
-from app.scenario import FIELDS, GROUPS, Scenario, SectionFiles
+from app.scenario import FIELDS, GROUPS, Scenario
 from app.scenario_error import (
     ScenarioError,
     ascii_safe,
@@ -25,18 +25,15 @@ from app.scenario_error import (
     shown,
     unknown,
 )
-from app.table_text import TableError
-from app.tables import read_drag_table, read_lift_table, read_outline_table, table_source
+from app.scenario_migration import SCHEMA, DigestOf, migrate
+from app.scenario_sections import FolderTables, TableSource, read_sections
 from solver.errors import InputError
 
 __all__ = ["ScenarioError", "read_scenario", "scenario_from_text"]
 
-SCHEMA = 1
 LARGEST_FILE = 1_000_000
 """Largest scenario file that is read [bytes]."""
 
-MOST_SECTIONS = 40
-TABLE_KEYS = ("outline", "lift", "drag")
 TEXTS = {"name": 120, "author": 200, "note": 20_000}
 """The texts of ``[scenario]`` and their largest lengths [characters]."""
 
@@ -90,15 +87,79 @@ def scenario_from_text(text: str, *, file: str, folder: Path) -> Scenario:
     ScenarioError
         As :func:`read_scenario`.
     """
-    content = _parse(text, file)
-    _require_schema(content, file)
+    tables = FolderTables(folder, file)
+    content = to_current(parse(text, file), file, tables.digest_of)
+    scenario = scenario_from_content(content, file, tables)
+    scenario.folder, scenario.source_text = folder, text
+    return scenario
+
+
+def to_current(content: Mapping[str, Any], file: str, digest_of: DigestOf) -> dict[str, Any]:
+    """Bring the content of a file to today's schema.
+
+    Parameters
+    ----------
+    content : mapping
+        From `parse`.
+    file : str
+        What errors call it.
+    digest_of : callable
+        Finds the sha256 of a table by its path, section and entry.
+
+    Returns
+    -------
+    dict
+
+    Raises
+    ------
+    ScenarioError
+        If its schema is missing, none, or newer than today's.
+    """
+    if "schema" not in content:
+        raise ScenarioError(
+            file, "schema", f"is missing; a scenario starts with the line schema = {SCHEMA}"
+        )
+    schema = content["schema"]
+    if type(schema) is int and schema > SCHEMA:
+        raise ScenarioError(
+            file,
+            "schema",
+            f"must be at most {SCHEMA}; got {shown(schema)}, which a newer Halfspan has written",
+        )
+    if type(schema) is not int or schema < 1:
+        raise ScenarioError(
+            file, "schema", f"must be a whole number from 1 to {SCHEMA}; got {shown(schema)}"
+        )
+    return migrate(content, schema=schema, digest_of=digest_of)
+
+
+def scenario_from_content(content: Mapping[str, Any], file: str, source: TableSource) -> Scenario:
+    """Make a scenario from what a file says.
+
+    Parameters
+    ----------
+    content : mapping
+        From `to_current`.
+    file : str
+        What errors call it.
+    source : TableSource
+        Where its tables are.
+
+    Returns
+    -------
+    Scenario
+        Valid as a whole; without a folder.
+
+    Raises
+    ------
+    ScenarioError
+        As :func:`read_scenario`.
+    """
     _require_tables(content, file)
     scenario = Scenario(
         **_texts(content.get("scenario", {}), file),
-        folder=folder,
-        sections=dict(_sections(content.get("sections", {}), file, folder)),
+        sections=dict(read_sections(content.get("sections", {}), file, source)),
     )
-    scenario.source_text = text
     values = dict(_values(content, file))
     try:
         scenario.set_values(values)
@@ -155,7 +216,25 @@ def _too_large(file: str, size: int) -> ScenarioError:
     )
 
 
-def _parse(text: str, file: str) -> dict[str, Any]:
+def parse(text: str, file: str) -> dict[str, Any]:
+    """Read TOML, and word what is wrong with it.
+
+    Parameters
+    ----------
+    text : str
+        TOML, of a length that was looked at before.
+    file : str
+        What errors call it.
+
+    Returns
+    -------
+    dict
+
+    Raises
+    ------
+    ScenarioError
+        If it is not TOML.
+    """
     if found := _LONG_KEY.search(text):
         line = text.count("\n", 0, found.start()) + 1
         raise ScenarioError(
@@ -182,22 +261,6 @@ def _parse(text: str, file: str) -> dict[str, Any]:
         raise ScenarioError(
             file, "", "has a whole number with thousands of digits, which is not read"
         ) from None
-
-
-def _require_schema(content: Mapping[str, Any], file: str) -> None:
-    if "schema" not in content:
-        raise ScenarioError(
-            file, "schema", f"is missing; a scenario starts with the line schema = {SCHEMA}"
-        )
-    schema = content["schema"]
-    if type(schema) is int and schema > SCHEMA:
-        raise ScenarioError(
-            file,
-            "schema",
-            f"must be {SCHEMA}; got {shown(schema)}, which a newer Halfspan has written",
-        )
-    if type(schema) is not int or schema != SCHEMA:
-        raise ScenarioError(file, "schema", f"must be {SCHEMA}; got {shown(schema)}")
 
 
 def _require_tables(content: Mapping[str, Any], file: str) -> None:
@@ -259,103 +322,3 @@ def _values(content: Mapping[str, Any], file: str) -> Iterator[tuple[str, object
             if name not in known:
                 raise unknown(file, group, name, known)
             yield name, value
-
-
-def _sections(
-    tables: Mapping[str, Any], file: str, folder: Path
-) -> Iterator[tuple[str, SectionFiles]]:
-    if len(tables) > MOST_SECTIONS:
-        raise ScenarioError(
-            file, "sections", f"must have at most {MOST_SECTIONS} tables; got {len(tables)}"
-        )
-    for name, table in tables.items():
-        key = f"sections.{quoted(name)}"
-        if not name.strip() or len(name) > 80 or not name.isprintable():
-            raise ScenarioError(file, key, "must have a printable name of 1 to 80 characters")
-        if not isinstance(table, Mapping):
-            raise ScenarioError(file, key, f"must be a table; got {shown(table)}")
-        for entry in table:
-            if entry not in TABLE_KEYS:
-                raise unknown(file, key, entry, TABLE_KEYS)
-        yield name, _section(table, file, key, folder)
-
-
-def _section(table: Mapping[str, Any], file: str, key: str, folder: Path) -> SectionFiles:
-    paths: dict[str, Path] = {}
-    for entry in TABLE_KEYS:
-        if entry not in table:
-            raise ScenarioError(
-                file, f"{key}.{entry}", "is missing; a section needs outline, lift and drag"
-            )
-        paths[entry] = _table_path(table[entry], file, f"{key}.{entry}", folder)
-    return SectionFiles(
-        outline=table["outline"],
-        lift=table["lift"],
-        drag=table["drag"],
-        tables=read_section_tables(paths, file=file, key=key),
-    )
-
-
-def read_section_tables(paths: Mapping[str, Path], *, file: str, key: str) -> SectionTables:
-    """Read the tables of one section.
-
-    Parameters
-    ----------
-    paths : mapping of str to pathlib.Path
-        Of ``outline``, ``lift`` and ``drag``.
-    file, key : str
-        What errors call the scenario and the section.
-
-    Returns
-    -------
-    SectionTables
-        With the hash of their content.
-
-    Raises
-    ------
-    ScenarioError
-        With the sentence of the table at fault.
-    """
-    entry = "outline"
-    try:
-        outline_name, outline = read_outline_table(paths["outline"])
-        entry = "lift"
-        lift = tuple(read_lift_table(paths["lift"]))
-        entry = "drag"
-        drag = tuple(read_drag_table(paths["drag"]))
-        said = [line for one in ("lift", "drag") for line in table_source(paths[one]).splitlines()]
-    except TableError as error:
-        raise ScenarioError(file, f"{key}.{entry}", f"cannot be used: {error}") from error
-    return SectionTables(
-        outline_name=outline_name,
-        outline=outline,
-        lift=lift,
-        drag=drag,
-        source="\n".join(dict.fromkeys(said)),
-    )
-
-
-def _table_path(value: object, file: str, key: str, folder: Path) -> Path:
-    allowed = "the path of a CSV file in the scenario's folder or below it"
-    if not isinstance(value, str) or not value or not value.isprintable() or len(value) > 1000:
-        raise ScenarioError(file, key, f"must be {allowed}; got {shown(value)}")
-    relative = PurePosixPath(value)
-    # A backslash or a drive would be another path on another system.
-    if relative.is_absolute() or ".." in relative.parts or "\\" in value or ":" in value:
-        raise ScenarioError(file, key, f"must be {allowed}; got {shown(value)}")
-    path = folder / relative
-    try:
-        inside = path.resolve().is_relative_to(folder.resolve())
-        if inside and path.is_file():
-            return path
-        exists = path.exists()
-    except OSError as error:
-        raise ScenarioError(
-            file, key, f"cannot be read: {shown(value)}, {error.strerror}"
-        ) from error
-    if not inside:
-        raise ScenarioError(
-            file, key, f"must be {allowed}; got {shown(value)}, a link that leads out of it"
-        )
-    problem = "is not a file" if exists else "does not exist"
-    raise ScenarioError(file, key, f"must be {allowed}; got {shown(value)}, which {problem}")

@@ -7,35 +7,32 @@ saved is what would be loaded.
 
 from __future__ import annotations
 
-import os
-import secrets
 import tomllib
 from collections.abc import Mapping
 from pathlib import Path
 from typing import Any
 
 import tomlkit
+from param.parameterized import discard_events
 from tomlkit.exceptions import TOMLKitError
 from tomlkit.items import Item, Table
 
+from app.safe_write import disk_trouble, replace_file
 from app.scenario import FIELDS, GROUPS, Scenario, SectionFiles
 from app.scenario_error import ScenarioError, input_refusal
-from app.scenario_file import (
-    SCHEMA,
-    TABLE_KEYS,
-    TEXTS,
-    read_section_tables,
-    text_problem,
-)
+from app.scenario_file import TEXTS, text_problem
+from app.scenario_migration import SCHEMA, TABLE_KEYS, digest_key
+from app.tables_beside import put_beside
 from solver.errors import InputError
 
 
 def write_scenario(scenario: Scenario, path: str | Path) -> None:
-    """Write a scenario, and its tables when the folder is another one.
+    """Write a scenario, and beside it the tables that do not lie there yet.
 
     The file is replaced in one step: a reader sees the old or the new one,
-    never half of it. Tables are copied beside it where they are not yet there.
-    Afterwards the scenario's `folder` and `source_text` are those of the file.
+    never half of it. Tables go into the folder ``tables`` beside the file, under
+    names that hold the start of their sha256. Afterwards the scenario's
+    `folder`, `source_text` and the paths in `sections` are those of the file.
 
     Parameters
     ----------
@@ -52,26 +49,38 @@ def write_scenario(scenario: Scenario, path: str | Path) -> None:
     """
     path = Path(path)
     file = str(path)
-    text = scenario_text(scenario, file=file)
+    scenario_text(scenario, file=file)  # refused before anything is written
     try:
         target = path.resolve()
         if target.is_dir():
             raise ScenarioError(file, "", "is a folder; a scenario is a TOML file")
-        _carry_tables(scenario, target.parent, file)
-        _replace(target, text.encode())
+        sections = {
+            name: put_beside(name, files, target.parent, before=scenario.folder, file=file)
+            for name, files in scenario.sections.items()
+        }
+        text = scenario_text(scenario, sections=sections, file=file)
+        replace_file(target, text.encode())
     except OSError as error:
-        raise ScenarioError(file, "", f"cannot be written: {error.strerror}") from error
-    scenario.folder = target.parent
+        raise ScenarioError(file, "", f"cannot be written: {disk_trouble(error)}") from error
+    with discard_events(scenario):  # where tables lie is no input
+        scenario.folder, scenario.sections = target.parent, sections
     scenario.source_text = text
 
 
-def scenario_text(scenario: Scenario, *, file: str = "scenario") -> str:
+def scenario_text(
+    scenario: Scenario,
+    *,
+    sections: Mapping[str, SectionFiles] | None = None,
+    file: str = "scenario",
+) -> str:
     """Word a scenario as TOML, with the comments of the text it was read from.
 
     Parameters
     ----------
     scenario : Scenario
         Must be valid as a whole.
+    sections : mapping of str to SectionFiles, optional
+        The same sections with other paths.
     file : str
         What errors call it.
 
@@ -85,7 +94,7 @@ def scenario_text(scenario: Scenario, *, file: str = "scenario") -> str:
     ScenarioError
         If the scenario is not valid.
     """
-    content = _content(scenario, file)
+    content = _content(scenario, scenario.sections if sections is None else sections, file)
     for text in (_merged(scenario.source_text, content), _fresh(content)):
         # The reader's library is another one than the writer's: it has the last word.
         if text and tomllib.loads(text) == content:
@@ -93,7 +102,7 @@ def scenario_text(scenario: Scenario, *, file: str = "scenario") -> str:
     raise ScenarioError(file, "", "cannot be written as TOML that reads back the same")
 
 
-def _content(scenario: Scenario, file: str) -> dict[str, Any]:
+def _content(scenario: Scenario, sections: Mapping[str, SectionFiles], file: str) -> dict[str, Any]:
     """Everything the file has to say, as the reader will see it."""
     try:
         scenario.freeze()
@@ -107,12 +116,17 @@ def _content(scenario: Scenario, file: str) -> dict[str, Any]:
     content: dict[str, Any] = {"schema": SCHEMA, "scenario": texts}
     for group, cls in GROUPS.items():
         content[group] = {name: _plain(values[name]) for name in cls.__annotations__}
-    if scenario.sections:
-        content["sections"] = {
-            name: {key: getattr(files, key) for key in TABLE_KEYS}
-            for name, files in scenario.sections.items()
-        }
+    if sections:
+        content["sections"] = {name: _paths(files) for name, files in sections.items()}
     return content
+
+
+def _paths(files: SectionFiles) -> dict[str, str]:
+    found = {}
+    for entry in TABLE_KEYS:
+        table = getattr(files, entry)
+        found[entry], found[digest_key(entry)] = table.path, table.digest
+    return found
 
 
 def _plain(value: float | str) -> float | int | str:
@@ -140,6 +154,8 @@ def _merged(text: str, content: Mapping[str, Any]) -> str:
                 if name not in document:
                     document[name] = _fresh_table(table)
                 _merge_table(document[name], table)
+            elif document.get(name) != table:
+                document[name] = table
         if "sections" in document and "sections" not in content:
             del document["sections"]
         return tomlkit.dumps(document)
@@ -189,58 +205,3 @@ def _fresh_table(content: Mapping[str, Any]) -> Table:
             item.comment(entry.help)
         table.add(name, item)
     return table
-
-
-def _carry_tables(scenario: Scenario, folder: Path, file: str) -> None:
-    """Copy the tables to another folder, unless they are there already."""
-    if not scenario.sections or (scenario.folder and scenario.folder.resolve() == folder):
-        return
-    for name, files in scenario.sections.items():
-        key = f'sections."{name}"'
-        if scenario.folder is None:
-            raise ScenarioError(file, key, "has tables of which the folder is not known")
-        _require_unchanged(files, scenario.folder, file=file, key=key)
-        for entry in TABLE_KEYS:
-            relative = getattr(files, entry)
-            source, target = scenario.folder / relative, folder / relative
-            if not target.resolve().is_relative_to(folder):
-                raise ScenarioError(
-                    file, f"{key}.{entry}", f"cannot be copied: {relative} leads out of the folder"
-                )
-            data = source.read_bytes()
-            if not target.exists():
-                target.parent.mkdir(parents=True, exist_ok=True)
-                _replace(target, data)
-            elif target.read_bytes() != data:
-                raise ScenarioError(
-                    file,
-                    f"{key}.{entry}",
-                    f"cannot be copied: the folder has another file named {relative}; "
-                    "save into another folder",
-                )
-
-
-def _require_unchanged(files: SectionFiles, folder: Path, *, file: str, key: str) -> None:
-    paths = {entry: folder / getattr(files, entry) for entry in TABLE_KEYS}
-    if read_section_tables(paths, file=file, key=key) != files.tables:
-        raise ScenarioError(
-            file, key, "cannot be copied: its tables have changed on disk since they were read"
-        )
-
-
-def _replace(target: Path, data: bytes) -> None:
-    """Put a file in place in one step, on the disk before it has its name."""
-    temporary = target.with_name(f".{target.name[:60]}.{secrets.token_hex(8)}.part")
-    # Not tempfile, which would leave the saved file readable by its owner only.
-    handle = os.open(temporary, os.O_WRONLY | os.O_CREAT | os.O_EXCL, 0o666)
-    try:
-        with os.fdopen(handle, "wb") as stream:
-            stream.write(data)
-            stream.flush()
-            os.fsync(stream.fileno())
-        if target.exists():
-            temporary.chmod(target.stat().st_mode & 0o777)
-        temporary.replace(target)
-    except BaseException:
-        temporary.unlink(missing_ok=True)
-        raise

@@ -6,10 +6,12 @@ Nothing here knows what a column means.
 from __future__ import annotations
 
 import csv
+import hashlib
 import math
 import re
 import stat
 from dataclasses import dataclass, replace
+from functools import cached_property
 from pathlib import Path
 
 LARGEST_FILE = 8_000_000
@@ -84,6 +86,27 @@ def shown(text: str) -> str:
 
 
 @dataclass(frozen=True)
+class TableText:
+    """A table as text, wherever it came from.
+
+    Fields
+    ------
+    file : str
+        What errors call it.
+    text : str
+        Its content, with plain line feeds and no byte-order mark.
+    """
+
+    file: str
+    text: str
+
+    @cached_property
+    def digest(self) -> str:
+        """Sha256 of the text: the same whatever line ends a system gives its files."""
+        return hashlib.sha256(self.text.encode()).hexdigest()
+
+
+@dataclass(frozen=True)
 class Row:
     """One row: the line it stands on, counted from 1, and its fields, trimmed."""
 
@@ -152,13 +175,35 @@ class Table:
         return replace(self, headings=("",) * len(self.headings), rows=(first, *self.rows))
 
 
-def read_table(path: str | Path) -> Table:
-    """Read a table of comma-, semicolon-, tab- or space-separated fields.
+def read_table_text(path: str | Path) -> TableText:
+    """Read the text of a table.
 
     Parameters
     ----------
     path : str or pathlib.Path
-        A regular file of at most 8 MB and 200,000 rows, UTF-8.
+        A regular file of at most 8 MB, UTF-8.
+
+    Returns
+    -------
+    TableText
+
+    Raises
+    ------
+    TableError
+        If the file cannot be read, is too large or is not text.
+    """
+    text = _read_text(Path(path), str(path))
+    return TableText(str(path), text.replace("\r\n", "\n"))
+
+
+def read_table(path: str | Path | TableText) -> Table:
+    """Read a table of comma-, semicolon-, tab- or space-separated fields.
+
+    Parameters
+    ----------
+    path : str or pathlib.Path or TableText
+        A regular file of at most 8 MB, UTF-8, or what such a file would hold; at
+        most 200,000 rows.
 
     Returns
     -------
@@ -170,8 +215,8 @@ def read_table(path: str | Path) -> Table:
         If the file cannot be read, is too large, is not text, has no row beside its
         headings or has rows of other lengths.
     """
-    file = str(path)
-    lines = _read_text(Path(path), file).splitlines()
+    source = path if isinstance(path, TableText) else read_table_text(path)
+    file, lines = source.file, source.text.splitlines()
     comments = tuple(line.strip()[1:].strip() for line in lines if line.lstrip().startswith("#"))
     kept = [
         (number, line)

@@ -16,7 +16,7 @@ from pathlib import Path
 import numpy as np
 from numpy.typing import NDArray
 
-from app.table_text import NUMBER, Row, Table, TableError, read_table
+from app.table_text import NUMBER, Row, Table, TableError, TableText, read_table
 from solver.errors import InputError
 from solver.section.sweeps import SAME_REYNOLDS, Sweep
 
@@ -83,7 +83,7 @@ class _Column:
 
 
 def read_lift_table(
-    path: str | Path,
+    path: str | Path | TableText,
     columns: Mapping[str, str] | None = None,
     units: Mapping[str, str] | None = None,
 ) -> list[Sweep]:
@@ -91,7 +91,7 @@ def read_lift_table(
 
     Parameters
     ----------
-    path : str or pathlib.Path
+    path : str or pathlib.Path or TableText
         A CSV file of at most 8 MB with columns for Reynolds number, angle and lift,
         and where measured for moment, drag and the direction of the sweep.
     columns : mapping of str to str, optional
@@ -117,7 +117,7 @@ def read_lift_table(
 
 
 def read_drag_table(
-    path: str | Path,
+    path: str | Path | TableText,
     columns: Mapping[str, str] | None = None,
     units: Mapping[str, str] | None = None,
 ) -> list[Sweep]:
@@ -125,7 +125,7 @@ def read_drag_table(
 
     Parameters
     ----------
-    path : str or pathlib.Path
+    path : str or pathlib.Path or TableText
         As for :func:`read_lift_table`, with a column for drag.
     columns, units : mapping of str to str, optional
         As for :func:`read_lift_table`.
@@ -143,12 +143,12 @@ def read_drag_table(
     return _read_runs(path, ("reynolds", "angle", "lift", "drag"), columns, units)
 
 
-def table_source(path: str | Path) -> str:
+def table_source(path: str | Path | TableText) -> str:
     """Read the comment lines of a table: where its numbers come from.
 
     Parameters
     ----------
-    path : str or pathlib.Path
+    path : str or pathlib.Path or TableText
 
     Returns
     -------
@@ -163,14 +163,18 @@ def table_source(path: str | Path) -> str:
     return "\n".join(read_table(path).comments)
 
 
-def read_outline_table(path: str | Path) -> tuple[str, FloatArray]:
+def read_outline_table(
+    path: str | Path | TableText, *, unnamed: str | None = None
+) -> tuple[str, FloatArray]:
     """Read the outline of a section.
 
     Parameters
     ----------
-    path : str or pathlib.Path
+    path : str or pathlib.Path or TableText
         A CSV file of two columns, x and y, with or without headings; a comment line
-        ``# name: ...`` names the section, else the file does.
+        ``# name: ...`` names the section.
+    unnamed : str, optional
+        The name where the table gives none; that of the file unless given.
 
     Returns
     -------
@@ -186,7 +190,7 @@ def read_outline_table(path: str | Path) -> tuple[str, FloatArray]:
     """
     table = read_table(path)
     names = [c[5:].strip() for c in table.comments if c.lower().startswith("name:")]
-    name = (names[0] if names else "") or Path(path).stem
+    name = (names[0] if names else "") or unnamed or Path(table.file).stem
     if all(NUMBER.fullmatch(field) for field in table.headings):
         table = table.without_headings()
     indices = _outline_columns(table)
@@ -218,7 +222,7 @@ def _outline_columns(table: Table) -> tuple[int, int]:
 
 
 def _read_runs(
-    path: str | Path,
+    path: str | Path | TableText,
     needed: Sequence[str],
     columns: Mapping[str, str] | None,
     units: Mapping[str, str] | None,

@@ -42,13 +42,13 @@ WRONG = [
     ("schema = 1\n[wing", "", "a.toml is not TOML in line 2, the end: "),
     ("schema = 1\nschema = 1\n", "", "a.toml is not TOML in line 2, "),
     ("schema = 1\n[wing]\n[wing]\n", "", "[wing] stands twice"),
-    ("# nothing but this\n", "schema", "is missing; a scenario starts with the line schema = 1"),
+    ("# nothing but this\n", "schema", "is missing; a scenario starts with the line schema = 2"),
     (WING, "schema", "is missing"),
-    ("schema = 2\n", "schema", "must be 1; got 2, which a newer Halfspan has written"),
-    ("schema = 0\n", "schema", "must be 1; got 0"),
-    ("schema = '1'\n", "schema", "must be 1; got '1'"),
-    ("schema = true\n", "schema", "must be 1; got true"),
-    ("schema = 1.0\n", "schema", "must be 1; got 1"),
+    ("schema = 3\n", "schema", "must be at most 2; got 3, which a newer Halfspan has written"),
+    ("schema = 0\n", "schema", "must be a whole number from 1 to 2; got 0"),
+    ("schema = '1'\n", "schema", "must be a whole number from 1 to 2; got '1'"),
+    ("schema = true\n", "schema", "must be a whole number from 1 to 2; got true"),
+    ("schema = 1.0\n", "schema", "must be a whole number from 1 to 2; got 1"),
     ("schema = 1\n[wings]\n", "wings", "is not a known table (did you mean wing?); there are sc"),
     ("schema = 1\n[engine]\n", "engine", "is not a known table; there are scenario, brief, wing"),
     ("schema = 1\nspan_m = 2\n", "span_m", "is in the wrong place; it belongs in [wing]"),
@@ -114,7 +114,7 @@ def test_every_field_refuses_what_is_not_its_kind(entry):
 
 
 def test_an_error_survives_a_process_boundary():
-    error = refusal("schema = 2\n")
+    error = refusal("schema = 3\n")
     again = pickle.loads(pickle.dumps(error))
     assert (str(again), again.file, again.key) == (str(error), error.file, error.key)
 
@@ -175,7 +175,7 @@ def test_a_pipe_is_refused_without_waiting_for_it(tmp_path):
 def test_an_empty_file_is_said(content, tmp_path):
     path = tmp_path / "a.toml"
     path.write_bytes(content)
-    with pytest.raises(ScenarioError, match=r"a\.toml is empty; a scenario starts with schema = 1"):
+    with pytest.raises(ScenarioError, match=r"a\.toml is empty; a scenario starts with schema = 2"):
         read_scenario(path)
 
 
@@ -233,13 +233,14 @@ def test_usable_digits_are_those_that_have_an_outline():
 
 @pytest.fixture
 def with_tables(tmp_path):
-    """Put a scenario with the tables of E387 into a folder."""
+    """Put a scenario with the tables of E387 into a folder, of the schema without sha256."""
     folder = tmp_path / "mine"
     (folder / "measured").mkdir(parents=True)
     for path in (FOLDER / "measured").glob("e387_*.csv"):
         (folder / "measured" / path.name).write_bytes(path.read_bytes())
     path = folder / "a.toml"
-    path.write_bytes(example_path().read_bytes())
+    text = example_path().read_text(encoding="utf-8").replace("schema = 2", "schema = 1")
+    path.write_text(re.sub(r"^\w+_sha256 = .*\n", "", text, flags=re.M), encoding="utf-8")
     return path
 
 

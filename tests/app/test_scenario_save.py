@@ -2,8 +2,12 @@
 
 from __future__ import annotations
 
+import errno
+import hashlib
 import os
+import re
 import stat
+import time
 import tomllib
 from pathlib import Path
 
@@ -11,12 +15,12 @@ import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
-from app import scenario_save
+from app import safe_write
 from app.scenario import Scenario, field_list
 from app.scenario_error import ScenarioError
 from app.scenario_file import read_scenario, scenario_from_text
 from app.scenario_save import scenario_text, write_scenario
-from scenarios import example_names, example_path
+from scenarios import FOLDER, example_names, example_path
 from solver.errors import InputError
 
 MINIMAL = 'schema = 1\n[wing]\nroot_section = "NACA 4409"\ntip_section = "NACA 4409"\n'
@@ -172,73 +176,197 @@ def test_saving_through_a_link_keeps_the_link(tmp_path):
     assert read_scenario(tmp_path / "real" / "a.toml").freeze() == flyable().freeze()
 
 
-@pytest.mark.parametrize("step", ["fsync", "replace"])
-def test_a_failure_on_the_way_leaves_the_old_file(step, tmp_path, monkeypatch):
+@pytest.mark.parametrize("step", ["open", "fsync", "replace"])
+@pytest.mark.parametrize(
+    ("number", "words"),
+    [
+        (errno.ENOSPC, "the disk is full; free some space and try again"),
+        (errno.EROFS, "the folder is read-only; choose another one"),
+        (errno.EACCES, "writing is not allowed there; choose another folder or change its perm"),
+        (errno.EBUSY, os.strerror(errno.EBUSY)),
+    ],
+)
+def test_a_failure_on_the_way_leaves_the_old_file(step, number, words, tmp_path, monkeypatch):
     path = tmp_path / "a.toml"
     write_scenario(flyable(), path)
     old = path.read_bytes()
 
     def fail(*_arguments):
-        raise OSError(28, "No space left on device")
+        raise OSError(number, os.strerror(number))
 
-    if step == "fsync":
-        monkeypatch.setattr(scenario_save.os, "fsync", fail)
-    else:
-        monkeypatch.setattr(Path, "replace", fail)
     scenario = flyable()
     scenario.set_values({"span_m": 2.2})
-    with pytest.raises(ScenarioError, match="cannot be written: No space left on device"):
-        write_scenario(scenario, path)
+    with monkeypatch.context() as patch:
+        patch.setattr(safe_write.os, step, fail)
+        with pytest.raises(ScenarioError) as caught:
+            write_scenario(scenario, path)
+    assert str(caught.value).startswith(f"{path} cannot be written: {words}")
     assert path.read_bytes() == old
     assert [one.name for one in tmp_path.iterdir()] == ["a.toml"]
+    assert scenario.source_text != old.decode()
 
 
-@pytest.mark.parametrize("place", ["none/a.toml", ""])
-def test_a_place_that_cannot_be_written_is_said(place, tmp_path):
-    with pytest.raises(ScenarioError, match=r"cannot be written: No such|is a folder"):
+def test_content_and_then_name_are_forced_to_the_disk_before_saving_ends(tmp_path, monkeypatch):
+    steps = []
+    fsync, replace = os.fsync, os.replace
+
+    def noted_fsync(handle):
+        steps.append("folder" if stat.S_ISDIR(os.fstat(handle).st_mode) else "content")
+        fsync(handle)
+
+    def noted_replace(source, target):
+        steps.append("name")
+        replace(source, target)
+
+    monkeypatch.setattr(safe_write.os, "fsync", noted_fsync)
+    monkeypatch.setattr(safe_write.os, "replace", noted_replace)
+    write_scenario(flyable(), tmp_path / "a.toml")
+    assert steps == ["content", "name", "folder"]
+
+
+def test_what_a_dead_process_left_half_written_goes_after_a_day(tmp_path):
+    old, new = (tmp_path / f".a.toml.{digit * 16}.part" for digit in "01")
+    mine = tmp_path / ".notes.part"
+    for path in (old, new, mine):
+        path.touch()
+    for path in (old, mine):
+        os.utime(path, (time.time() - 90_000,) * 2)
+    safe_write.sweep(tmp_path)
+    assert sorted(tmp_path.iterdir()) == sorted([new, mine])
+
+
+@pytest.mark.parametrize(
+    ("place", "words"),
+    [("none/a.toml", "cannot be written: its folder does not exist"), ("", "is a folder")],
+)
+def test_a_place_that_cannot_be_written_is_said(place, words, tmp_path):
+    with pytest.raises(ScenarioError, match=words):
         write_scenario(flyable(), tmp_path / place)
+
+
+def table_names(folder: Path) -> list[str]:
+    """List the tables that lie beside a scenario."""
+    return sorted(one.name for one in (folder / "tables").iterdir())
 
 
 def test_saving_elsewhere_carries_the_tables_along(tmp_path):
     scenario = read_scenario(example_path())
     before = scenario.freeze()
-    path = tmp_path / "b.toml"
-    write_scenario(scenario, path)
-    assert read_scenario(path).freeze() == before
-    names = sorted(one.name for one in (tmp_path / "measured").iterdir())
-    assert names == ["e387_model_e_drag.csv", "e387_model_e_lift.csv", "e387_outline.csv"]
+    revision = scenario.revision
+    write_scenario(scenario, tmp_path / "b.toml")
+    assert scenario.revision == revision  # where tables lie is no input
+    assert read_scenario(tmp_path / "b.toml").freeze() == scenario.freeze() == before
+    names = table_names(tmp_path)
+    assert len(names) == 3
+    for name in names:
+        data = (tmp_path / "tables" / name).read_bytes()
+        entry, start = re.fullmatch(r"E387-(outline|lift|drag)-([0-9a-f]{12})\.csv", name).groups()
+        assert hashlib.sha256(data).hexdigest().startswith(start)
+        assert getattr(scenario.sections["E387"], entry).path == f"tables/{name}"
     write_scenario(scenario, tmp_path / "c.toml")
     assert read_scenario(tmp_path / "c.toml").freeze() == before
+    assert table_names(tmp_path) == names  # shared
 
 
-def test_another_table_of_the_same_name_is_not_overwritten(tmp_path):
+def test_the_folder_opens_wherever_it_is_moved(tmp_path, monkeypatch):
+    scenario = read_scenario(example_path())
+    (tmp_path / "here").mkdir()
+    write_scenario(scenario, tmp_path / "here" / "b.toml")
+    (tmp_path / "here").rename(tmp_path / "there")
+    monkeypatch.chdir(tmp_path)
+    assert read_scenario("there/b.toml").freeze() == scenario.freeze()
+    assert read_scenario(tmp_path / "there" / "b.toml").freeze() == scenario.freeze()
+
+
+def shorter_lift(path: Path) -> str:
+    """Take the last point of a table away; give what is left."""
+    shorter, _last = path.read_text(encoding="utf-8").rstrip().rsplit("\n", 1)
+    path.write_text(shorter + "\n", encoding="utf-8")
+    return shorter + "\n"
+
+
+def test_two_scenarios_with_other_tables_of_one_section_share_a_folder(tmp_path):
+    first = read_scenario(example_path())
+    write_scenario(first, tmp_path / "first.toml")
+    (tmp_path / "away").mkdir()
+    write_scenario(read_scenario(example_path()), tmp_path / "away" / "a.toml")
+    text = (tmp_path / "away" / "a.toml").read_text(encoding="utf-8")
+    (lift,) = (tmp_path / "away" / "tables").glob("*-lift-*")
+    new = hashlib.sha256(shorter_lift(lift).encode()).hexdigest()
+    text = re.sub(r'(lift_sha256 = )".*"', rf'\1"{new}"', text)
+    (tmp_path / "away" / "a.toml").write_text(text, encoding="utf-8")
+    second = read_scenario(tmp_path / "away" / "a.toml")
+    assert second.freeze() != first.freeze()
+    write_scenario(second, tmp_path / "second.toml")
+    assert len(table_names(tmp_path)) == 4
+    assert read_scenario(tmp_path / "first.toml").freeze() == first.freeze()
+    assert read_scenario(tmp_path / "second.toml").freeze() == second.freeze()
+
+
+def test_a_table_changed_by_hand_is_neither_overwritten_nor_passed_off(tmp_path):
+    scenario = read_scenario(example_path())
+    before = scenario.freeze()
+    write_scenario(scenario, tmp_path / "b.toml")
+    (lift,) = (tmp_path / "tables").glob("*-lift-*")
+    changed = shorter_lift(lift)
+    with pytest.raises(
+        ScenarioError, match=r"E387\.lift_sha256 does not fit '.*', which was chang"
+    ):
+        read_scenario(tmp_path / "b.toml")
+    write_scenario(scenario, tmp_path / "b.toml")
+    assert read_scenario(tmp_path / "b.toml").freeze() == before
+    assert lift.read_text(encoding="utf-8") == changed
+    (longer,) = (one for one in (tmp_path / "tables").glob("*-lift-*") if one != lift)
+    assert re.fullmatch(r"E387-lift-[0-9a-f]{64}\.csv", longer.name)
+    shorter_lift(longer)
+    with pytest.raises(ScenarioError, match=r"was changed by hand; give that file another name"):
+        write_scenario(scenario, tmp_path / "b.toml")
+
+
+def test_a_table_that_went_is_written_again_from_what_was_read(tmp_path):
+    scenario = read_scenario(example_path())
+    write_scenario(scenario, tmp_path / "b.toml")
+    for path in (tmp_path / "tables").iterdir():
+        path.unlink()
+    write_scenario(scenario, tmp_path / "b.toml")
+    assert read_scenario(tmp_path / "b.toml").freeze() == scenario.freeze()
+
+
+def test_a_table_without_a_name_of_its_own_keeps_its_name_when_it_moves(tmp_path):
     (tmp_path / "measured").mkdir()
-    other = tmp_path / "measured" / "e387_model_e_lift.csv"
-    other.write_text("mine", encoding="utf-8")
-    with pytest.raises(ScenarioError, match=r"E387.*lift cannot be copied: .* save into another"):
-        write_scenario(read_scenario(example_path()), tmp_path / "b.toml")
-    assert other.read_text(encoding="utf-8") == "mine"
-    assert not (tmp_path / "b.toml").exists()
+    for path in (FOLDER / "measured").iterdir():
+        text = path.read_text(encoding="utf-8")
+        (tmp_path / "measured" / path.name).write_text(
+            re.sub("^# name:.*\n", "", text, flags=re.MULTILINE), encoding="utf-8"
+        )
+    text = example_path().read_text(encoding="utf-8").replace("schema = 2", "schema = 1")
+    text = re.sub(r"^\w+_sha256 = .*\n", "", text, flags=re.MULTILINE)
+    scenario = scenario_from_text(text, file="a.toml", folder=tmp_path)
+    before = scenario.freeze()
+    assert before.root_source.tables.outline_name == "E387"
+    (tmp_path / "away").mkdir()
+    write_scenario(scenario, tmp_path / "away" / "a.toml")
+    assert read_scenario(tmp_path / "away" / "a.toml").freeze() == before
 
 
 def test_tables_are_not_carried_out_of_the_folder(tmp_path):
     (tmp_path / "away").mkdir()
     (tmp_path / "here").mkdir()
-    (tmp_path / "here" / "measured").symlink_to(tmp_path / "away")
+    (tmp_path / "here" / "tables").symlink_to(tmp_path / "away")
     with pytest.raises(ScenarioError, match="leads out of the folder"):
         write_scenario(read_scenario(example_path()), tmp_path / "here" / "b.toml")
     assert list((tmp_path / "away").iterdir()) == []
+    assert not (tmp_path / "here" / "b.toml").exists()
 
 
-def test_tables_that_changed_on_disk_are_not_passed_off_as_those_that_were_read(tmp_path):
-    write_scenario(read_scenario(example_path()), tmp_path / "b.toml")
-    scenario = read_scenario(tmp_path / "b.toml")
-    lift = tmp_path / "measured" / "e387_model_e_lift.csv"
-    shorter, _last = lift.read_text(encoding="utf-8").rstrip().rsplit("\n", 1)
-    lift.write_text(shorter + "\n", encoding="utf-8")
-    (tmp_path / "other").mkdir()
-    with pytest.raises(ScenarioError, match="have changed on disk since they were read"):
-        write_scenario(scenario, tmp_path / "other" / "b.toml")
+def test_a_section_of_any_name_gets_tables_of_a_plain_name(tmp_path):
+    scenario = read_scenario(example_path())
+    scenario.sections = {**scenario.sections, "../ \u00fcber/..": scenario.sections["E387"]}
+    scenario.set_values({"tip_section": "../ \u00fcber/.."})
+    write_scenario(scenario, tmp_path / "b.toml")
+    assert read_scenario(tmp_path / "b.toml").freeze() == scenario.freeze()
+    assert sorted(one.name for one in tmp_path.iterdir()) == ["b.toml", "tables"]
+    assert all(re.fullmatch(r"[A-Za-z0-9-]+\.csv", name) for name in table_names(tmp_path))
 
 
 def test_sections_come_and_go_with_the_scenario(tmp_path):
