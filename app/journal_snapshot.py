@@ -9,6 +9,7 @@ from __future__ import annotations
 
 import hashlib
 import re
+import secrets
 from collections.abc import Mapping
 from dataclasses import dataclass, fields
 from datetime import UTC, datetime
@@ -16,7 +17,8 @@ from typing import Any
 
 from app.analysis.results import Margin, Verdict
 from app.journal_picture import is_planform_svg
-from app.scenario_bundle import LARGEST_BUNDLE
+from app.scenario import Scenario
+from app.scenario_bundle import LARGEST_BUNDLE, scenario_from_bundle
 from app.scenario_error import ScenarioError
 from app.scenario_file import parse, text_problem
 from app.toml_text import block, line_string
@@ -204,6 +206,58 @@ def read_snapshot(text: str, *, name: str) -> Snapshot:
         return _snapshot(content, name)
     except (KeyError, TypeError) as error:
         raise DamagedError("something that belongs to a snapshot is missing in it") from error
+
+
+def snapshot_from_bytes(data: bytes, *, name: str) -> Snapshot:
+    """Read the bytes of a snapshot's file.
+
+    Parameters
+    ----------
+    data : bytes
+    name : str
+        Its id.
+
+    Returns
+    -------
+    Snapshot
+
+    Raises
+    ------
+    DamagedError, NewerError
+        As :func:`read_snapshot`.
+    """
+    if len(data) > LARGEST_SNAPSHOT:
+        raise DamagedError(f"it has more than {LARGEST_SNAPSHOT / 1e6:g} MB")
+    try:
+        text = data.decode("utf-8-sig")
+    except UnicodeDecodeError as error:
+        raise DamagedError("it is not text") from error
+    return read_snapshot(text.replace("\r\n", "\n"), name=name)
+
+
+def scenario_of(snapshot: Snapshot) -> Scenario:
+    """Make the scenario of a snapshot; see `app.journal.Journal.restore`."""
+    try:
+        return scenario_from_bundle(snapshot.bundle, file=f"the snapshot “{snapshot.name}”")
+    except ScenarioError as error:
+        raise JournalError(f"It cannot be restored: {error}.") from error
+
+
+def new_id(name: str, taken: datetime) -> str:
+    """Make an id that sorts by time, reads as the name, and no other snapshot has.
+
+    Parameters
+    ----------
+    name : str
+    taken : datetime.datetime
+        In UTC.
+
+    Returns
+    -------
+    str
+    """
+    word = re.sub(r"[^A-Za-z0-9]+", "-", name).strip("-")[:40].strip("-") or "snapshot"
+    return f"{taken:%Y%m%dT%H%M%SZ}-{word}-{secrets.token_hex(6)}"
 
 
 def _snapshot(content: Mapping[str, Any], name: str) -> Snapshot:

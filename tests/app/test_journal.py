@@ -12,7 +12,7 @@ from pathlib import Path
 import numpy as np
 import pytest
 
-from app import journal, safe_write
+from app import journal, journal_snapshot, safe_write
 from app.journal import Journal, JournalError, default_folder, search
 from app.journal_picture import is_planform_svg, planform_svg
 from app.journal_snapshot import ENDING, read_snapshot, snapshot_text
@@ -290,7 +290,7 @@ def test_bytes_that_are_not_text_and_huge_files_are_set_aside(store, monkeypatch
     path.write_bytes(b"\xff\xfe")
     assert "(it is not text)" in store.list().messages[0]
     path.write_bytes(b"#" * 2001)
-    monkeypatch.setattr(journal, "LARGEST_SNAPSHOT", 2000)
+    monkeypatch.setattr(journal_snapshot, "LARGEST_SNAPSHOT", 2000)
     assert "(it has more than 0.002 MB)" in store.list().messages[0]
 
 
@@ -338,7 +338,7 @@ def test_a_snapshot_that_vanished_is_said(store):
         lambda one: store.rename(one, name="New"),
         lambda s: store.get(s.id),
     ):
-        with pytest.raises(JournalError, match="is no longer there; it was renamed, moved or del"):
+        with pytest.raises(JournalError, match="is no longer there; it was moved or deleted else"):
             action(snapshot)
     assert names(store) == []
     token = store.deleted().snapshots[0].id
