@@ -326,6 +326,11 @@ Label = tuple[float, float, str, str] | tuple[float, float, str, str, str]
 """Place x and y, words, colour; and ``"left"``, ``"center"`` or ``"right"``."""
 
 
+def _legible(shade: str) -> str:
+    """Give the blue of today's marks as small words need it: seen on both papers."""
+    return look.colour("today-words") if shade == look.colour("today") else shade
+
+
 class Labels:
     """Words beside lines and points, in the colour of what they name.
 
@@ -370,7 +375,7 @@ class Labels:
             Rows as in `Label`; those at a not-finite place are left out.
         """
         kept = [
-            (*row[:4], row[4] if len(row) > 4 else "left")
+            (*row[:3], _legible(row[3]), row[4] if len(row) > 4 else "left")
             for row in labels
             if math.isfinite(row[0]) and math.isfinite(row[1])
         ]

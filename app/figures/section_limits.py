@@ -97,7 +97,7 @@ class LargestLift(SectionPlot):
             # So that the room between a station's lift and its limit is seen.
             spans = (results.landing.landing_span, results.cruise.span)
             seen.append(np.array([np.max(span.lift) for span in spans]))
-        fit(self.y_range, *seen, room=(0.25, 0.12))
+        fit(self.y_range, *seen, room=(0.14, 0.3))
         self._feed_ranges(section)
 
     def _feed_ranges(self, section: SectionResult) -> None:
@@ -117,7 +117,7 @@ class LargestLift(SectionPlot):
             [
                 (
                     float(np.sqrt(low * high)) / 1e3,
-                    self.bottom + (0.03 + 0.09 * index) * self.height,
+                    self.top - (0.11 + 0.09 * index) * self.height,
                     text,
                     colour,
                     "center",

@@ -42,15 +42,14 @@ class SectionSheet(Sheet):
     def build(self) -> Sequence[pn.viewable.Viewable]:
         """Make figures and words."""
         self.which = Choice(
-            self._choose_section, sizing_mode="stretch_width", css_classes=["halfspan-full"]
+            self._choose_section, sizing_mode="stretch_width", css_classes=["halfspan-line"]
         )
         self.levels = Choice(
-            self._choose_level, sizing_mode="stretch_width", css_classes=["halfspan-full"]
+            self._choose_level, sizing_mode="stretch_width", css_classes=["halfspan-line"]
         )
         self.facts, self.findings = words_card("tall"), words_card("wide")
+        self.choices = [self.which, self.levels]
         return [
-            self.which,
-            self.levels,
             self.card(LiftOverAngle(self.station)),
             self.card(LiftOverDrag(self.station)),
             self.card(LargestLift(self.station)),

@@ -8,7 +8,7 @@ from dataclasses import dataclass
 import panel as pn
 
 from app.analysis.results import Results
-from app.components import Message, Words
+from app.components import Choice, Message, Words
 from app.figures.look import static_text
 from app.figures.plot import Plot
 from app.figures.station import Station
@@ -75,16 +75,23 @@ class Sheet:
             self._fold,
             fold="Numbers behind the plots",
             sizing_mode="stretch_width",
-            css_classes=["halfspan-full"],
+            css_classes=["halfspan-line"],
         )
         self.unfolded = False
+        self.choices: list[Choice] = []
         self.grid = pn.Column(
             css_classes=["halfspan-sheet"],
             stylesheets=[static_text("layout.css")],
             sizing_mode="stretch_width",
         )
         # Shown and hidden through a plain box: the grid's own rules would undo it.
-        self.view = pn.Column(self.grid, sizing_mode="stretch_width", visible=False, name=self.name)
+        self.view = pn.Column(
+            self.grid,
+            stylesheets=[static_text("layout.css")],
+            sizing_mode="stretch_width",
+            visible=False,
+            name=self.name,
+        )
 
     @property
     def built(self) -> bool:
@@ -154,7 +161,8 @@ class Sheet:
         self._feed_numbers()
         if cards is not None:
             # Filled before it is shown: the browser paints it once.
-            self.grid.objects = [*cards, self.folded]
+            self.grid.objects = list(cards)
+            self.view.objects = [*self.choices, self.grid, self.folded]
 
     def card(self, plot: Plot, *, shape: str = "one") -> pn.viewable.Viewable:
         """Make a card of a figure and feed it from now on.

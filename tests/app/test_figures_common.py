@@ -8,7 +8,7 @@ import re
 import numpy as np
 import pytest
 from bokeh.models import Range1d
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from app.analysis.results import Trust
@@ -40,6 +40,7 @@ def test_numbers_have_three_figures_and_their_unit(value, unit, text):
     assert words.number(value, unit) == text
 
 
+@settings(deadline=None)  # a busy machine is not an error
 @given(st.floats(min_value=1e-3, max_value=1e7))
 def test_three_figures_are_within_half_a_unit_of_the_third(value):
     shown = float(words.number(value).replace(THIN, ""))
@@ -74,6 +75,7 @@ def test_a_range_with_equal_ends_is_one_number():
 codes = st.lists(st.sampled_from(list(Trust)), min_size=1, max_size=30)
 
 
+@settings(deadline=None)  # a busy machine is not an error
 @given(codes)
 def test_every_found_point_is_drawn_and_no_lost_one_is(trust):
     values = np.arange(len(trust), dtype=float)
@@ -84,6 +86,7 @@ def test_every_found_point_is_drawn_and_no_lost_one_is(trust):
     assert (seen == values).all()
 
 
+@settings(deadline=None)  # a busy machine is not an error
 @given(codes)
 def test_a_step_between_two_points_is_drawn_like_its_less_trusted_end(trust):
     trust = np.array(trust)
@@ -133,6 +136,7 @@ def test_nothing_found_leaves_the_range_alone(data):
     assert bounds(axis) == (0.0, 1.0)
 
 
+@settings(deadline=None)  # a busy machine is not an error
 @given(st.lists(st.floats(-1e6, 1e6, allow_nan=False), min_size=2, max_size=8))
 def test_a_range_always_holds_the_data_and_what_is_included(data):
     axis = Range1d(start=0.0, end=1.0)

@@ -12,7 +12,7 @@ from pathlib import Path
 from urllib.parse import urlsplit
 
 import pytest
-from playwright.sync_api import Browser, Page, sync_playwright
+from playwright.sync_api import Browser, Page, expect, sync_playwright
 
 ROOT = Path(__file__).resolve().parents[2]
 SIZE = {"width": 1366, "height": 768}
@@ -26,6 +26,8 @@ ARGUMENTS = (
     "--disable-component-update",
     "--disable-sync",
 )
+# Long, for a busy machine; nothing waits for it where all is well.
+expect.set_options(timeout=20_000)
 IDLE = "() => window.Bokeh && Bokeh.documents.length > 0 && Bokeh.documents[0].is_idle"
 
 
