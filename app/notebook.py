@@ -11,7 +11,9 @@ import logging
 import socket
 import webbrowser
 from collections.abc import Callable, Mapping
+from contextlib import AbstractContextManager
 from pathlib import Path
+from types import TracebackType
 from typing import Any, Protocol, cast
 
 import panel as pn
@@ -73,7 +75,9 @@ class Session:
         self.notice = ""
         self.chosen = ""
         self.results: Results | None = None
-        self.sheets = {kind.name: kind(Station(self._say_station)) for kind in SHEETS}
+        self.sheets = {
+            kind.name: kind(Station(self._say_station), lambda: _Guard(self)) for kind in SHEETS
+        }
         self.open = self.sheets[FIRST]
         self.strip = Strip(self._strip_message, css_classes=["halfspan-strip"], **_WIDE)
         self.tabs = Tabs(
@@ -193,8 +197,7 @@ class Session:
         self.column.state = {
             "values": self.scenario.values(),
             "refusals": {
-                name: {"value": value, "text": text}
-                for name, (value, text) in self.refused.items()
+                name: {"value": value, "text": text} for name, (value, text) in self.refused.items()
             },
         }
 
@@ -234,19 +237,21 @@ class Session:
         )
 
 
-class _Guard:
+class _Guard(AbstractContextManager[None]):
     """Turn an error in a callback into a sentence on the page."""
 
     def __init__(self, session: Session) -> None:
         self.session = session
 
-    def __enter__(self) -> None:
-        return None
-
-    def __exit__(self, kind: type[BaseException] | None, error: object, trace: object) -> bool:
-        if kind is None or not issubclass(kind, Exception):
+    def __exit__(
+        self,
+        kind: type[BaseException] | None,
+        error: BaseException | None,
+        trace: TracebackType | None,
+    ) -> bool:
+        if not isinstance(error, Exception):
             return False
-        LOG.error("a callback failed", exc_info=(kind, error, trace))  # type: ignore[arg-type]
+        LOG.error("a callback failed", exc_info=error)
         self.session.fail()
         return True
 

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from contextlib import nullcontext
 
 import numpy as np
 import panel as pn
@@ -23,7 +24,7 @@ from app.figures.section_plots import (
 )
 from app.figures.station import Station
 from app.sheets.numbers import section_numbers
-from app.sheets.sheet import FieldGroup, Sheet, facts, note, sentences, title, words_card
+from app.sheets.sheet import FieldGroup, Guard, Sheet, facts, note, sentences, title, words_card
 
 TRUST_KEY = "Solid: inside the data. Dashed: extrapolated. Dotted: beyond stall, indicative only."
 
@@ -34,8 +35,8 @@ class SectionSheet(Sheet):
     name = "Section"
     groups = (FieldGroup("Sections", ("root_section", "tip_section", "tail_section", "finish")),)
 
-    def __init__(self, station: Station) -> None:
-        super().__init__(station)
+    def __init__(self, station: Station, guard: Guard = nullcontext) -> None:
+        super().__init__(station, guard)
         self.chosen = 0
         self.only: float = ALL
 
@@ -87,12 +88,14 @@ class SectionSheet(Sheet):
         self.findings.blocks = _findings(section)
 
     def _choose_section(self, message: Message) -> None:
-        self.chosen, self.only = int(message["choose"]), ALL
-        self._again()
+        with self.guard():
+            self.chosen, self.only = int(message["choose"]), ALL
+            self._again()
 
     def _choose_level(self, message: Message) -> None:
-        self.only = float(message["choose"])
-        self._again()
+        with self.guard():
+            self.only = float(message["choose"])
+            self._again()
 
     def _again(self) -> None:
         if self.results is not None:

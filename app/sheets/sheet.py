@@ -2,7 +2,8 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
+from contextlib import AbstractContextManager, nullcontext
 from dataclasses import dataclass
 
 import panel as pn
@@ -12,6 +13,8 @@ from app.components import Choice, Message, Words
 from app.figures.look import static_text
 from app.figures.plot import Plot
 from app.figures.station import Station
+
+Guard = Callable[[], AbstractContextManager[None]]
 
 
 @dataclass(frozen=True)
@@ -61,14 +64,16 @@ class Sheet:
     ----------
     station : Station
         The place that all plots point at.
+    guard : callable, optional
+        Makes what each callback runs under, so that its errors are said.
     """
 
     name: str
     want: frozenset[str] = frozenset()
     groups: tuple[FieldGroup, ...] = ()
 
-    def __init__(self, station: Station) -> None:
-        self.station = station
+    def __init__(self, station: Station, guard: Guard = nullcontext) -> None:
+        self.station, self.guard = station, guard
         self.plots: list[Plot] = []
         self.results: Results | None = None
         self.folded = Words(
@@ -139,8 +144,9 @@ class Sheet:
         raise NotImplementedError
 
     def _fold(self, message: Message) -> None:
-        self.unfolded = bool(message["open"])
-        self._feed_numbers()
+        with self.guard():
+            self.unfolded = bool(message["open"])
+            self._feed_numbers()
 
     def _feed_numbers(self) -> None:
         # A long table costs as much as all the plots: only where it is looked at.

@@ -237,3 +237,12 @@ def test_the_server_listens_on_this_computer_and_for_its_own_page_only():
         assert server._tornado._websocket_origins == {f"127.0.0.1:{server.port}"}
     finally:
         server.stop()
+
+
+def test_an_error_while_a_section_is_chosen_is_said(session, monkeypatch):
+    session.tabs._handle_msg({"sheet": "Section", "seq": 1})
+    sheet = session.sheets["Section"]
+    sheet.which._handle_msg({"choose": "1", "seq": 2})
+    assert session.strip.data["notice"] == ""
+    sheet.which._handle_msg({"choose": "none such", "seq": 3})
+    assert session.strip.data["notice"] == WRONG
