@@ -42,6 +42,7 @@ examples:
   halfspan open my-drone.toml       the notebook on your own scenario
   halfspan solve my-drone.toml      its margins, as text
   halfspan solve my-drone.toml --json | jq .margins
+  halfspan report my-drone.toml --output my-drone.html
   halfspan fields                   every input with unit, range, default, help
 
 exit status:
@@ -136,10 +137,20 @@ def _parser() -> argparse.ArgumentParser:
     unset = argparse.SUPPRESS
     opening = commands.add_parser(
         "open",
-        help="open the notebook on a scenario file",
-        description="Open the notebook in the browser on a scenario file.",
+        help="open the notebook on a scenario file, or on a report",
+        description=(
+            "Open the notebook in the browser on a scenario file, or on the scenario that rides "
+            "inside a report."
+        ),
     )
-    opening.add_argument("file", metavar="FILE", help="a scenario, as TOML")
+    opening.add_argument("file", metavar="FILE", help="a scenario, as TOML, or a report")
+    opening.add_argument(
+        "--scenario",
+        type=int,
+        default=1,
+        metavar="N",
+        help="which scenario of a report that compares several, from 1",
+    )
     _add_page_options(opening, port=unset, no_browser=unset, log_level=unset)
     opening.set_defaults(action=_open)
 
@@ -161,6 +172,8 @@ def _parser() -> argparse.ArgumentParser:
     _add_log_level(solving, unset)
     solving.set_defaults(action=_solve)
 
+    _add_report(commands)
+
     listing = commands.add_parser(
         "fields",
         help="list every input of a scenario",
@@ -169,6 +182,24 @@ def _parser() -> argparse.ArgumentParser:
     _add_log_level(listing, unset)
     listing.set_defaults(action=_fields)
     return parser
+
+
+def _add_report(commands: argparse._SubParsersAction[argparse.ArgumentParser]) -> None:
+    reporting = commands.add_parser(
+        "report",
+        help="write a report: one HTML file that opens without Halfspan or a network",
+        description=(
+            "Write a report on a scenario, or one that compares two to six: one HTML file that "
+            "opens from a disk, without Halfspan and without a network."
+        ),
+    )
+    reporting.add_argument("files", metavar="FILE", nargs="+", help="a scenario, as TOML")
+    reporting.add_argument("--output", metavar="OUT.html", required=True, help="where to")
+    reporting.add_argument("--title", default="", help="instead of the scenario's name")
+    reporting.add_argument("--author", default="", help="instead of the scenario's author")
+    reporting.add_argument("--note", default="", help="instead of the scenario's note")
+    _add_log_level(reporting, argparse.SUPPRESS)
+    reporting.set_defaults(action=_report)
 
 
 def _add_page_options(
@@ -228,12 +259,13 @@ def version() -> str:
         return str(tomllib.loads(project.read_text(encoding="utf-8"))["project"]["version"])
 
 
-def _scenario(file: str) -> Scenario:
+def _scenario(file: str, number: int = 1) -> Scenario:
+    from app.report.read import ReportReadError, is_report, read_report
     from app.scenario_file import ScenarioError, read_scenario
 
     try:
-        return read_scenario(file)
-    except ScenarioError as error:
+        return read_report(file, number=number) if is_report(file) else read_scenario(file)
+    except (ScenarioError, ReportReadError) as error:
         raise UnusableError(str(error)) from error
 
 
@@ -249,7 +281,7 @@ def _open(arguments: argparse.Namespace) -> int:
 
 def _serve(file: str, arguments: argparse.Namespace) -> int:
     start_log(arguments.log_level)
-    scenario = _scenario(file)
+    scenario = _scenario(file, getattr(arguments, "scenario", 1))
     if blamed := _unusable_section(scenario.freeze(), file):
         raise blamed
     from app.notebook import serve
@@ -310,6 +342,29 @@ def _solve(arguments: argparse.Namespace) -> int:
         width = min(max(shutil.get_terminal_size((92, 24)).columns, 60), 100)
         print(answer_text(results, oddities=oddities, width=width))
     return FAILS if any(margin.verdict == "fail" for margin in results.margins) else DONE
+
+
+def _report(arguments: argparse.Namespace) -> int:
+    from app.report import ReportError, make_report
+
+    start_log(arguments.log_level)
+    scenarios = [_scenario(file) for file in arguments.files]
+    for scenario, file in zip(scenarios, arguments.files, strict=True):
+        if blamed := _unusable_section(scenario.freeze(), file):
+            raise blamed
+    _pin_loaded()
+    try:
+        path = make_report(
+            [(scenario, None) for scenario in scenarios],
+            title=arguments.title,
+            author=arguments.author,
+            note=arguments.note,
+            output=arguments.output,
+        )
+    except ReportError as error:
+        raise UnusableError(str(error)) from error
+    print(f"{path} ({path.stat().st_size / 1e6:.1f} MB) opens in any browser, without a network")
+    return DONE
 
 
 def _answer(scenario: Scenario, file: str) -> Results:
