@@ -5,6 +5,7 @@ from __future__ import annotations
 import errno
 import os
 import re
+import threading
 import tomllib
 from datetime import UTC, datetime, timedelta, timezone
 from pathlib import Path
@@ -13,6 +14,7 @@ import numpy as np
 import pytest
 
 from app import journal, journal_snapshot, safe_write
+from app.file_lock import locked, try_lock
 from app.journal import Journal, JournalError, default_folder, search
 from app.journal_picture import is_planform_svg, planform_svg
 from app.journal_snapshot import ENDING, read_snapshot, snapshot_text
@@ -355,6 +357,39 @@ def test_a_name_given_in_another_window_is_not_overwritten(store):
         store.rename(snapshot, name="Mine")
     (listed,) = store.list().snapshots
     assert store.rename(listed, name="Mine").name == "Mine"
+
+
+def test_a_change_waits_for_another_window_and_brings_nothing_back(store):
+    snapshot = take(store)
+    said: list[str] = []
+
+    def rename() -> None:
+        try:
+            store.rename(snapshot, name="Mine")
+        except JournalError as error:
+            said.append(str(error))
+
+    waiting = threading.Thread(target=rename)
+    with locked(store.folder / ".lock"):
+        waiting.start()
+        waiting.join(0.3)
+        assert waiting.is_alive()
+        path_of(store, snapshot).unlink()  # what the other window does meanwhile
+    waiting.join(30.0)
+    assert not waiting.is_alive()
+    assert "is no longer there" in said[0]
+    assert names(store) == []
+
+
+def test_a_lock_is_held_by_one_and_let_go(tmp_path):
+    held = try_lock(tmp_path / "lock")
+    assert held is not None
+    assert try_lock(tmp_path / "lock") is None
+    held.release()
+    held.release()
+    again = try_lock(tmp_path / "lock")
+    assert again is not None
+    again.release()
 
 
 def test_a_folder_that_went_is_said(store):
