@@ -131,7 +131,7 @@ def _parser() -> argparse.ArgumentParser:
     )
     parser.add_argument("--version", action=_Version, nargs=0, help="print the version and end")
     parser.set_defaults(action=_demo)
-    _add_page_options(parser, port=0, no_browser=False, log_level="info")
+    _add_page_options(parser, port=0, no_browser=False, journal=None, log_level="info")
     commands = parser.add_subparsers(title="commands", metavar="COMMAND")
 
     unset = argparse.SUPPRESS
@@ -151,7 +151,7 @@ def _parser() -> argparse.ArgumentParser:
         metavar="N",
         help="which scenario of a report that compares several, from 1",
     )
-    _add_page_options(opening, port=unset, no_browser=unset, log_level=unset)
+    _add_page_options(opening, port=unset, no_browser=unset, journal=unset, log_level=unset)
     opening.set_defaults(action=_open)
 
     solving = commands.add_parser(
@@ -203,7 +203,12 @@ def _add_report(commands: argparse._SubParsersAction[argparse.ArgumentParser]) -
 
 
 def _add_page_options(
-    parser: argparse.ArgumentParser, *, port: object, no_browser: object, log_level: object
+    parser: argparse.ArgumentParser,
+    *,
+    port: object,
+    no_browser: object,
+    journal: object,
+    log_level: object,
 ) -> None:
     parser.add_argument(
         "--port",
@@ -217,6 +222,13 @@ def _add_page_options(
         action="store_true",
         default=no_browser,
         help="print the notebook's address and leave the browser alone",
+    )
+    parser.add_argument(
+        "--journal",
+        type=_folder,
+        default=journal,
+        metavar="DIR",
+        help="folder of the snapshots; without it, Halfspan journal among your documents",
     )
     _add_log_level(parser, log_level)
 
@@ -235,6 +247,18 @@ def _port(text: str) -> int:
     if not (text.isdecimal() and len(text) <= 5 and 1 <= int(text) <= 65535):
         raise argparse.ArgumentTypeError(f"must be a number from 1 to 65535; got {text[:40]!r}")
     return int(text)
+
+
+def _folder(text: str) -> Path:
+    path = Path(text)
+    usable = False
+    if text.strip() and "\0" not in text:
+        with suppress(OSError):
+            nearest = next(one for one in (path, *path.absolute().parents) if one.exists())
+            usable = nearest.is_dir()
+    if not usable:
+        raise argparse.ArgumentTypeError(f"must be a folder, or a new one; got {text[:200]!r}")
+    return path
 
 
 class _Version(argparse.Action):
@@ -288,6 +312,9 @@ def _serve(file: str, arguments: argparse.Namespace) -> int:
 
     _pin_loaded()
 
+    # Where none is given, the notebook knows the place.
+    chosen = {} if arguments.journal is None else {"journal": arguments.journal}
+
     def ready(address: str) -> None:
         print(f"Halfspan shows {scenario.name} at {address} (Ctrl-C ends it)", flush=True)
 
@@ -297,6 +324,7 @@ def _serve(file: str, arguments: argparse.Namespace) -> int:
             port=arguments.port,
             open_browser=not arguments.no_browser,
             ready=ready,
+            **chosen,
         )
     except OSError as error:
         if error.errno not in (errno.EADDRINUSE, errno.EACCES):

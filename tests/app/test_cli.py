@@ -239,7 +239,8 @@ class Served:
         self.asked: list[tuple[str, object, object]] = []
         self.error: BaseException | None = None
 
-    def serve(self, scenario, *, port, open_browser, ready):
+    def serve(self, scenario, *, port, open_browser, ready, journal=None):
+        self.journal = journal
         self.asked.append((scenario.name, port, open_browser))
         if self.error is not None:
             raise self.error
@@ -268,6 +269,25 @@ def test_options_before_the_command_count_too(served):
 def test_without_a_command_the_demo_is_served(served):
     assert cli.main([]) == cli.DONE
     assert served.asked == [("Heronsgill 24", 0, True)]
+
+
+def test_the_journal_is_where_it_is_said_to_be(served, tmp_path):
+    for arguments in (["--journal", str(tmp_path)], ["open", TARN_RIDGE, "--journal", "new/one"]):
+        assert cli.main(arguments) == cli.DONE
+        assert served.journal == Path(arguments[-1])
+    assert cli.main(["--journal", str(tmp_path), "open", TARN_RIDGE]) == cli.DONE
+    assert served.journal == tmp_path
+    assert cli.main([]) == cli.DONE
+    assert served.journal is None
+
+
+@pytest.mark.parametrize("folder", [TARN_RIDGE, "", " ", f"{TARN_RIDGE}/journal", "x" * 5000])
+def test_a_journal_that_is_no_folder_is_said(folder, served, capsys):
+    with pytest.raises(SystemExit) as caught:
+        cli.main(["open", TARN_RIDGE, "--journal", folder])
+    assert caught.value.code == cli.UNUSABLE
+    assert "--journal: must be a folder, or a new one; got" in capsys.readouterr().err
+    assert served.asked == []
 
 
 @pytest.mark.parametrize(
