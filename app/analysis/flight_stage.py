@@ -30,7 +30,7 @@ from solver.wing.stall import Room, follow, least_angle_room, room, stalling_ran
 FloatArray = NDArray[np.float64]
 TrustArray = NDArray[np.uint8]
 
-SWEEP_SPEEDS = 24
+SWEEP_SPEEDS = 20
 CURVE_FROM, CURVE_STEP, CURVE_POINTS = np.radians(-4.0), np.radians(1.0), 12
 STALLED_STEP, STALLED_POINTS = np.radians(1.25), 6
 """How the lift curve is followed from the onset of stall on."""

@@ -32,7 +32,7 @@ WAKE_TOLERANCE = np.radians(0.05)
 arm of one half-span that moves the wake by 0.1 % of the half-span, and the downwash
 by less than 0.1 % of itself."""
 
-SETTLING = np.radians(1.0)
+SETTLING = np.radians(0.1)
 """The wake is laid anew once a step turns the aircraft by less than this [rad]."""
 
 

@@ -117,6 +117,11 @@ class Trimmed:
         return np.asarray(np.sum(self.forces.lift * on_tail, axis=-1) * self.dynamic_pressure)
 
 
+IDLE_WAKE = np.radians(2.0)
+"""How far the wake may lie off the stream where no tail feels it [rad]: dihedral and
+sweep alone see the angle, to second order."""
+
+
 def trim(
     aircraft: Aircraft,
     load: Load,
@@ -174,7 +179,11 @@ def trim(
         guess = _elliptic_guess(problem, np.full(batch, 0.5 * aircraft.area))
     if angle is not None:
         guess = Guess(guess.circulation, given, guess.elevator)
-    return _solved(problem, guess, field=_reusable(start, guess))
+    # A tail that carries nothing does not ask where the wake passes it.
+    tolerance = IDLE_WAKE if unloaded_tail else WAKE_TOLERANCE
+    return _solved(
+        problem, guess, field=_reusable(start, guess, tolerance), wake_tolerance=tolerance
+    )
 
 
 def trim_at_knee(aircraft: Aircraft, load: Load, *, band: ArrayLike = NOMINAL) -> Trimmed:
@@ -231,19 +240,25 @@ def _elliptic_guess(problem: Problem, lift_area: FloatArray) -> Guess:
     return Guess(circulation, np.asarray(angle), np.zeros(lift_area.shape))
 
 
-def _reusable(start: Trimmed | None, guess: Guess) -> Influence | None:
+def _reusable(start: Trimmed | None, guess: Guess, tolerance: float) -> Influence | None:
     """The neighbour's influence, where its wake lies along the guess's stream."""
     if start is None:
         return None
     field = start.state.flow.influence
     if field.wake_angle.shape != guess.angle.shape:
         return None
-    close = np.all(np.abs(guess.angle - field.wake_angle) <= WAKE_TOLERANCE)
+    close = np.all(np.abs(guess.angle - field.wake_angle) <= tolerance)
     return field if close else None
 
 
-def _solved(problem: Problem, guess: Guess, *, field: Influence | None) -> Trimmed:
-    at, converged = solve(problem, guess, field=field)
+def _solved(
+    problem: Problem,
+    guess: Guess,
+    *,
+    field: Influence | None,
+    wake_tolerance: float = WAKE_TOLERANCE,
+) -> Trimmed:
+    at, converged = solve(problem, guess, field=field, wake_tolerance=wake_tolerance)
     return Trimmed(
         state=_loading(at, converged),
         forces=at.forces,
