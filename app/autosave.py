@@ -144,7 +144,8 @@ class Autosave:
         path = self.folder / f"{digest}.toml"
         try:
             if _is(path, digest):
-                os.utime(path)
+                with suppress(OSError):  # a state that can be read is kept, read-only disk or not
+                    os.utime(path)
                 return digest
             self.folder.mkdir(parents=True, exist_ok=True, mode=0o700)
             replace_file(path, data)

@@ -24,6 +24,7 @@ from app.journal_snapshot import (
     Snapshot,
     key_figure,
     new_id,
+    read_snapshot,
     scenario_of,
     snapshot_text,
 )
@@ -113,6 +114,10 @@ class Journal:
             picture=planform_svg(results.planform),
             bundle=bundle,
         )
+        try:
+            read_snapshot(snapshot_text(snapshot), name=snapshot.id)
+        except DamagedError as error:  # what is kept must be readable again
+            raise JournalError(f"The snapshot could not be taken: {error}.") from error
         self.write(snapshot)
         return snapshot
 

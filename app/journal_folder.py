@@ -25,6 +25,7 @@ from app.journal_snapshot import (
     snapshot_from_bytes,
 )
 from app.safe_write import disk_trouble, replace_file, sweep, sync_folder
+from app.scenario_error import ascii_safe
 
 DELETED, DAMAGED = "deleted", "damaged"
 LOCK = ".lock"
@@ -116,9 +117,9 @@ class SnapshotFolder:
             except DamagedError as error:
                 messages.append(self._set_aside(path, error))
             except NewerError as error:
-                messages.append(f"{path.name} is not shown: {error}.")
+                messages.append(f"{_said(path)} is not shown: {error}.")
             except OSError as error:
-                messages.append(f"{path.name} is not shown: {disk_trouble(error)}.")
+                messages.append(f"{_said(path)} is not shown: {disk_trouble(error)}.")
         found.sort(key=lambda one: (one.taken, one.id), reverse=True)
         return Listing(tuple(found), tuple(messages))
 
@@ -271,6 +272,12 @@ def vanished(path: Path) -> JournalError:
         f"The snapshot {path.name.removesuffix(ENDING)} is no longer there; "
         "it was moved or deleted elsewhere."
     )
+
+
+def _said(path: Path) -> str:
+    """A file's name for a sentence: whoever made the file chose the name."""
+    usable = USABLE_ID.fullmatch(path.name.removesuffix(ENDING))
+    return path.name if usable else ascii_safe(path.name)
 
 
 def _free_place(folder: Path, name: str) -> Path:

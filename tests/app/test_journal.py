@@ -224,7 +224,7 @@ def test_an_id_cannot_lead_out_of_the_journal(store, bad, tmp_path):
 
 def test_files_that_are_not_the_journals_are_left_alone(store):
     take(store)
-    others = ["README.md", "a.toml", ".git", "photo.png", f"a b{ENDING}", f"link{ENDING}"]
+    others = ["README.md", "a.toml", ".git", "photo.png", f"a\nb{ENDING}", f"link{ENDING}"]
     for name in others:
         (store.folder / name).write_text("mine", encoding="utf-8")
     (store.folder / f"link{ENDING}").unlink()
@@ -234,6 +234,7 @@ def test_files_that_are_not_the_journals_are_left_alone(store):
     assert [one.name for one in listing.snapshots] == ["First"]
     assert len(listing.messages) == 3
     assert all(" is not shown: it" in message for message in listing.messages)
+    assert all(message.isprintable() for message in listing.messages)
     assert {one.name for one in store.folder.iterdir()} >= {*others, f"folder{ENDING}"}
 
 

@@ -47,7 +47,7 @@ CHANGES = st.lists(
 )
 
 
-@settings(deadline=None, max_examples=60, suppress_health_check=[HealthCheck.too_slow])
+@settings(deadline=None, max_examples=40, suppress_health_check=[HealthCheck.too_slow])
 @given(which=st.sampled_from(example_names()), changes=CHANGES, fresh=st.booleans())
 def test_what_is_bundled_comes_back_equal(which, changes, fresh):
     scenario = BASE[which].copy()
