@@ -28,7 +28,7 @@ TAIL_REYNOLDS = 100e3
 section and the flap among the measurements under tests/published show both."""
 
 SWEEP_DOUBT = (
-    "With sweep the neutral point may lie up to 3 % of chord further forward than stated (against "
+    "With sweep the neutral point may lie up to 4 % of chord further forward than stated (against "
     "Weissinger's extended lifting line at 30°)."
 )
 
