@@ -13,6 +13,8 @@ from app.analysis.results import Results
 from app.analysis.stages import EXTRAS, Analysis, drive_of
 from app.inputs import Inputs
 
+__all__ = ["EXTRAS", "Analysis", "ReportPart", "plain_table", "report_part"]
+
 
 @dataclass(frozen=True, eq=False)
 class ReportPart:

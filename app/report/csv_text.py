@@ -31,8 +31,8 @@ def station_csv(results: Results) -> str:
     head += ["limit_low", "limit", "limit_high", "room", "drag_coefficient", "loading", "trust"]
     rows = []
     for span in (results.landing.landing_span, results.cruise.span):
-        columns = (span.y_m, span.chord_m, span.reynolds, span.angle_deg, span.lift)
-        columns += (span.limit_low, span.limit, span.limit_high, span.room, span.drag)
+        columns = [span.y_m, span.chord_m, span.reynolds, span.angle_deg, span.lift]
+        columns += [span.limit_low, span.limit, span.limit_high, span.room, span.drag]
         for at, code in enumerate(span.trust):
             numbers = [float(column[at]) for column in (*columns, span.loading)]
             rows.append([span.condition, *map(_number, numbers), _TRUST[Trust(int(code))]])

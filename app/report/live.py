@@ -40,6 +40,22 @@ COLOURS = ("today", "limit", "body", "cruise", "induced", "profile")
 DASHES = ("solid", [8, 3], [2, 3], [8, 3, 2, 3], [14, 4], [4, 2, 1, 2])
 """Second carrier of which scenario a line belongs to."""
 
+LEGEND: dict[str, Any] = {
+    "location": "top_right",
+    "orientation": "horizontal",
+    # A piece of light paper under dark words, which holds on a dark page too.
+    "background_fill_color": look.token("card"),
+    "background_fill_alpha": 0.85,
+    "border_line_color": None,
+    "label_text_color": look.token("ink"),
+    "label_text_font": look.FONT,
+    "label_text_font_size": look.token("plot-text"),
+    "padding": 2,
+    "margin": 4,
+    "spacing": 10,
+    "glyph_width": 26,
+}
+
 
 class Live:
     """The live part of a report.
@@ -236,7 +252,7 @@ class Live:
         for at, one in enumerate(self.able):
             colour, dash = look.colour(COLOURS[at]), DASHES[at]
             source = self._source(f"live-{at}-data", ("x", "lift_to_drag", "share", "used"))
-            style = {"line_color": colour, "line_dash": dash, "line_width": 2.5}
+            style: dict[str, Any] = {"line_color": colour, "line_dash": dash, "line_width": 2.5}
             line = ratio.line("x", "lift_to_drag", source=source, legend_label=one.letter, **style)
             _reading(ratio, [line], [(one.letter, "@lift_to_drag{0.0} at @x{0.0} m/s")])
             along = self._source(f"live-{at}-along", ("share", "used"))
@@ -271,18 +287,7 @@ def _over_speed(title: str, label: str, one: Shown) -> figure:
 
 
 def _legend(plot: figure) -> None:
-    plot.legend.location = "top_right"
-    plot.legend.orientation = "horizontal"
-    plot.legend.background_fill_alpha = 0.6
-    plot.legend.background_fill_color = look.token("card")
-    plot.legend.label_text_color = look.token("ink")
-    plot.legend.label_text_font = look.FONT
-    plot.legend.label_text_font_size = look.token("plot-text")
-    plot.legend.border_line_color = None
-    plot.legend.padding = 2
-    plot.legend.margin = 4
-    plot.legend.spacing = 10
-    plot.legend.glyph_width = 26
+    plot.legend.update(**LEGEND)
 
 
 def _reading(plot: figure, lines: list[Any], rows: list[tuple[str, str]]) -> None:

@@ -3,19 +3,23 @@
 from __future__ import annotations
 
 from collections.abc import Callable
+from typing import Any, TypeAlias
 
 import numpy as np
-from bokeh.models import HoverTool, Legend, LegendItem
+from bokeh.models import HoverTool
+from bokeh.models.annotations import Legend, LegendItem
 from bokeh.models.renderers import GlyphRenderer
 from bokeh.plotting import figure
 
-from app.analysis.results import FloatArray, Results, SweepResult
+from app.analysis.results import FloatArray, Results, SweepResult, TrustArray
 from app.figures import look
 from app.figures.plot import TrustLine, fit, keep_to_scale, new_figure
 from app.figures.station import half_span
 from app.report.charts import Charts, drawing_height
-from app.report.live import COLOURS, DASHES
+from app.report.live import COLOURS, DASHES, LEGEND
 from app.report.order import Order
+
+Lines: TypeAlias = "list[GlyphRenderer[Any]]"
 
 MARKERS = ("circle", "square", "triangle", "diamond", "hex", "inverted_triangle")
 
@@ -67,7 +71,7 @@ def _planforms(charts: Charts, order: Order) -> str:
         y_range=(1.1 * bottom, -0.1 * bottom),
     )
     keep_to_scale(plot)
-    rows = []
+    rows: list[tuple[str, Lines]] = []
     for at, one in enumerate(order.shown):
         plan = one.results.planform
         lines = plot.multi_line(
@@ -155,9 +159,7 @@ def _useful(values: FloatArray, name: str) -> FloatArray:
     return found
 
 
-def _line(
-    plot: figure, at: int, x: FloatArray, y: FloatArray, trust: FloatArray
-) -> list[GlyphRenderer]:  # type: ignore[type-arg]
+def _line(plot: figure, at: int, x: FloatArray, y: FloatArray, trust: TrustArray) -> Lines:
     """Draw one wing's line; its dash says whose it is, thinness that it is less sure."""
     line = TrustLine(plot, colour=look.colour(COLOURS[at]), width=2.5)
     line.feed(x, y, trust)
@@ -170,30 +172,17 @@ def _done(
     charts: Charts,
     plot: figure,
     name: str,
-    rows: list[tuple[str, list[GlyphRenderer]]],  # type: ignore[type-arg]
+    rows: list[tuple[str, Lines]],
 ) -> str:
     for letter, lines in rows:
         reading = [(letter, "$y{0.00} at $x{0.0}")]
         plot.add_tools(
-            HoverTool(renderers=lines, tooltips=reading, line_policy="nearest", visible=False)
+            HoverTool(renderers=list(lines), tooltips=reading, line_policy="nearest", visible=False)
         )
     _legend(plot, [(letter, lines[:1]) for letter, lines in rows])
     return charts.add(plot, name)
 
 
-def _legend(plot: figure, rows: list[tuple[str, list[GlyphRenderer]]]) -> None:  # type: ignore[type-arg]
-    legend = Legend(
-        items=[LegendItem(label=label, renderers=lines) for label, lines in rows],
-        location="top_right",
-        orientation="horizontal",
-        background_fill_alpha=0.6,
-        background_fill_color=look.token("card"),
-        border_line_color=None,
-        label_text_color=look.token("ink"),
-        label_text_font=look.FONT,
-        label_text_font_size=look.token("plot-text"),
-        padding=2,
-        margin=4,
-        glyph_width=26,
-    )
-    plot.add_layout(legend)
+def _legend(plot: figure, rows: list[tuple[str, Lines]]) -> None:
+    items = [LegendItem(label=label, renderers=list(lines)) for label, lines in rows]
+    plot.add_layout(Legend(items=items, **LEGEND))

@@ -35,7 +35,8 @@ def verdict(which: Verdict) -> Html:
     """Write a verdict as mark, word and colour."""
     path = Html(
         '<svg viewBox="0 0 14 14" width="12" height="12" aria-hidden="true">'
-        f'<path d="{MARKS[which]}" fill="none" stroke="currentColor" stroke-width="2" stroke-linecap="round"'
+        f'<path d="{MARKS[which]}" fill="none" stroke="currentColor" stroke-width="2"'
+        ' stroke-linecap="round"'
         ' stroke-linejoin="round"/></svg>'
     )
     return tag("span", path, " ", str(which), cls=f"verdict {which}")
@@ -182,9 +183,7 @@ def planform_facts(results: Results) -> Html:
             ("Stall speed in trim", words.number(landing.stall_speed_m_s, "m/s")),
             (
                 "Its band",
-                words.span_of(
-                    *sorted((landing.stall_speed_low_m_s, landing.stall_speed_high_m_s)), "m/s"
-                ),
+                words.span_of(landing.stall_speed_low_m_s, landing.stall_speed_high_m_s, "m/s"),
             ),
             ("Stall begins", landing.onset_words),
             ("Lift to drag in cruise", words.number(results.cruise.lift_to_drag)),

@@ -242,6 +242,12 @@
     sayStation()
   }
 
+  // The station moves no curve: only what is read at it.
+  const moveStation = () => {
+    if (live) live.scenarios.forEach((one, at) => sayOne(at, one, settings()))
+    sayStation()
+  }
+
   if (live) {
     for (const name of ["speed", "mass", "altitude"]) input(name).addEventListener("input", move)
     byId("live-reset").addEventListener("click", () => {
@@ -274,7 +280,7 @@
   const point = (share) => {
     if (!marker) {
       station = share
-      move()
+      moveStation()
       return
     }
     const shares = [...table.data.share]
@@ -290,8 +296,7 @@
   if (marker) {
     marker.connect(marker.properties.data.change, () => {
       station = marker.data.share[0]
-      if (live) move()
-      else sayStation()
+      moveStation()
     })
     station = marker.data.share[0]
     rows.forEach((row, at) => row.addEventListener("click", () => point([...table.data.share][at])))
