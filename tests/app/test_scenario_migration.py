@@ -166,3 +166,11 @@ def test_line_ends_and_byte_order_marks_of_a_system_do_not_make_another_table(en
 def test_a_newer_schema_is_refused():
     with pytest.raises(ScenarioError, match="must be at most 2; got 3, which a newer Halfspan has"):
         from_first(re.sub("schema = 1", "schema = 3", FIRST))
+
+
+def test_the_guide_shows_the_sha256_of_the_tables_that_ship():
+    guide = (FOLDER.parent / "docs" / "scenario-file.md").read_text(encoding="utf-8")
+    for line in current().splitlines():
+        if "_sha256" in line:
+            assert line.replace("'", '"') in guide
+    assert f"`schema = {SCHEMA}` is the only line that must be there" in guide

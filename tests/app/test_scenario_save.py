@@ -285,6 +285,31 @@ def shorter_lift(path: Path) -> str:
     return shorter + "\n"
 
 
+def test_a_disk_that_fills_up_at_a_table_leaves_the_old_file(tmp_path, monkeypatch):
+    path = tmp_path / "b.toml"
+    write_scenario(flyable(), path)
+    old = path.read_bytes()
+    scenario = read_scenario(example_path())
+    before, text = dict(scenario.sections), scenario.source_text
+    replace, done = os.replace, []
+
+    def fail_at_the_second(source, target):
+        done.append(target)
+        if len(done) == 2:
+            raise OSError(errno.ENOSPC, os.strerror(errno.ENOSPC))
+        replace(source, target)
+
+    with monkeypatch.context() as patch:
+        patch.setattr(safe_write.os, "replace", fail_at_the_second)
+        with pytest.raises(ScenarioError, match="cannot be written: the disk is full"):
+            write_scenario(scenario, path)
+    assert path.read_bytes() == old
+    assert (scenario.sections, scenario.source_text) == (before, text)
+    assert scenario.folder == FOLDER
+    write_scenario(scenario, path)
+    assert read_scenario(path).freeze() == scenario.freeze()
+
+
 def test_two_scenarios_with_other_tables_of_one_section_share_a_folder(tmp_path):
     first = read_scenario(example_path())
     write_scenario(first, tmp_path / "first.toml")
