@@ -6,7 +6,7 @@ import numpy as np
 from scipy.optimize import brentq
 
 from solver.aircraft.configuration import Aircraft, Body, Elevator, assemble
-from solver.aircraft.trim import Load
+from solver.aircraft.load import Load
 from solver.section.packed import SectionLimits, SectionValues
 from solver.wing.planform import TaperedSurface, surface_from_area
 

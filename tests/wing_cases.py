@@ -10,8 +10,9 @@ import numpy as np
 from solver.section.packed import SectionLimits, SectionValues
 from solver.wing.forces import station_forces, trefftz_drag
 from solver.wing.influence import influence
-from solver.wing.lifting_line import Flow, Loading, StationPolars, solve
-from solver.wing.planform import lattice
+from solver.wing.lattice import lattice
+from solver.wing.lifting_line import Flow, Loading, solve
+from solver.wing.station_polars import StationPolars
 
 
 @dataclass(frozen=True)

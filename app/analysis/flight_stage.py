@@ -18,9 +18,10 @@ from app.analysis.results import (
 )
 from solver.aircraft.configuration import WING, Aircraft
 from solver.aircraft.landing import StallOnset
+from solver.aircraft.load import Load
 from solver.aircraft.speed import Drive, LevelFlight, electric_power, endurance, level_flight
 from solver.aircraft.stability import Stability
-from solver.aircraft.trim import Load, Trimmed
+from solver.aircraft.trim import Trimmed
 from solver.section.packed import HIGH, LOW, NOMINAL
 from solver.wing.forces import station_forces
 from solver.wing.influence import influence

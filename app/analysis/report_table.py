@@ -20,8 +20,8 @@ from app.analysis.results import Trust
 from app.inputs import Inputs
 from solver.aircraft.configuration import Aircraft
 from solver.aircraft.landing import stall_onset
+from solver.aircraft.load import Load
 from solver.aircraft.speed import Drive, level_flight
-from solver.aircraft.trim import Load
 from solver.atmosphere import standard_atmosphere
 from solver.section.packed import HIGH, LOW, NOMINAL
 

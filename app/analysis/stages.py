@@ -39,9 +39,10 @@ from app.analysis.verdicts import judged
 from app.inputs import Inputs, SectionSource
 from solver.aircraft.configuration import Aircraft
 from solver.aircraft.landing import stall_onset
+from solver.aircraft.load import Load
 from solver.aircraft.speed import Drive, electric_power, level_flight
 from solver.aircraft.stability import stability
-from solver.aircraft.trim import Load, Trimmed, trim
+from solver.aircraft.trim import Trimmed, trim
 from solver.atmosphere import Air, standard_atmosphere
 from solver.section.finish import finish
 from solver.section.packed import HELD, HIGH, LOW, NOMINAL, PackedPolars

@@ -14,8 +14,9 @@ from numpy.typing import NDArray
 from solver.errors import InputError, require_positive
 from solver.section.packed import PackedPolars
 from solver.section.thin_airfoil import flap_effectiveness
-from solver.wing.lifting_line import StationPolars
-from solver.wing.planform import Lattice, TaperedSurface, lattice
+from solver.wing.lattice import Lattice, lattice
+from solver.wing.planform import TaperedSurface
+from solver.wing.station_polars import StationPolars
 
 FloatArray = NDArray[np.float64]
 

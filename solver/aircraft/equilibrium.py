@@ -7,7 +7,7 @@ attack. Targets are a speed, an angle, or the knee of the first section to stall
 
 from __future__ import annotations
 
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 from functools import cached_property
 from typing import Protocol
 
@@ -15,6 +15,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from solver.aircraft.configuration import WING, Aircraft, body_moment_slope
+from solver.aircraft.load import Load
 from solver.wing.forces import StationForces, pitching_moment, station_forces
 from solver.wing.influence import Influence, influence
 from solver.wing.lifting_line import TOLERANCE, Flow, Linearised, linearise, shortened_step
@@ -34,63 +35,6 @@ by less than 0.1 % of itself."""
 
 SETTLING = np.radians(0.1)
 """The wake is laid anew once a step turns the aircraft by less than this [rad]."""
-
-
-@dataclass(frozen=True, eq=False)
-class Load:
-    """What the aircraft carries, in what air, balanced where.
-
-    Fields
-    ------
-    force, balance_x : float or ndarray, shape (...)
-        Load factor times weight [N], and balance point behind the wing root's leading
-        edge [m]; an array loads or balances each case of a batch by itself.
-    density : float
-        [kg/m3]
-    kinematic_viscosity : float
-        [m2/s]
-
-    Notes
-    -----
-    With density and viscosity 1 the speed is speed over viscosity and the force is
-    what the wing itself sees: lift coefficient and Reynolds number decide all else.
-    """
-
-    force: float | FloatArray
-    density: float
-    kinematic_viscosity: float
-    balance_x: float | FloatArray
-
-    def case(self, index: int) -> Load:
-        """What one case of a batch carries and where it balances.
-
-        Parameters
-        ----------
-        index : int
-
-        Returns
-        -------
-        Load
-        """
-        force, balance = np.asarray(self.force), np.asarray(self.balance_x)
-        return replace(
-            self,
-            force=force[index] if force.ndim else self.force,
-            balance_x=balance[index] if balance.ndim else self.balance_x,
-        )
-
-    @property
-    def forces(self) -> FloatArray:
-        """The force as an array, shape (...) [N]."""
-        return np.asarray(self.force, dtype=np.float64)
-
-    def area_at(self, speed: FloatArray) -> FloatArray:
-        """Lift over dynamic pressure that carries the load at a speed [m2]."""
-        return np.asarray(self.forces / (0.5 * self.density * np.square(speed)))
-
-    def speed_at(self, lift_area: FloatArray) -> FloatArray:
-        """Speed at which a lift area carries the load [m/s]."""
-        return np.asarray(np.sqrt(2.0 * self.forces / (self.density * lift_area)))
 
 
 @dataclass(frozen=True, eq=False)

@@ -8,7 +8,8 @@ import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from solver.aircraft.configuration import WING, Aircraft
-from solver.aircraft.trim import Load, Trimmed, trim_at_knee
+from solver.aircraft.load import Load
+from solver.aircraft.trim import Trimmed, trim_at_knee
 from solver.section.packed import NOMINAL
 from solver.wing.stall import critical_share, stalling_range
 

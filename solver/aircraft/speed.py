@@ -8,7 +8,8 @@ import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from solver.aircraft.configuration import Aircraft
-from solver.aircraft.trim import Load, Trimmed, trim
+from solver.aircraft.load import Load
+from solver.aircraft.trim import Trimmed, trim
 from solver.errors import require_positive, require_within
 from solver.section.packed import NOMINAL
 

@@ -22,17 +22,15 @@ from solver.aircraft.equilibrium import (
     AtKnee,
     AtSpeed,
     Guess,
-    Load,
     Problem,
     Target,
     solve,
 )
+from solver.aircraft.load import Load
 from solver.section.packed import NOMINAL
 from solver.wing.forces import StationForces
 from solver.wing.influence import Influence
 from solver.wing.lifting_line import Loading
-
-__all__ = ["Load", "Trimmed", "trim", "trim_at_knee"]
 
 FloatArray = NDArray[np.float64]
 BoolArray = NDArray[np.bool_]

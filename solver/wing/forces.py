@@ -12,7 +12,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from solver.wing.influence import CORE_FRACTION, Influence, core_radius
-from solver.wing.planform import Lattice
+from solver.wing.lattice import Lattice
 
 FloatArray = NDArray[np.float64]
 

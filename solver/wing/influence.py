@@ -16,7 +16,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
-from solver.wing.planform import Lattice
+from solver.wing.lattice import Lattice
 from solver.wing.sweep import sweep_upwash
 
 FloatArray = NDArray[np.float64]

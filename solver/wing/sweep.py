@@ -12,7 +12,7 @@ from __future__ import annotations
 import numpy as np
 from numpy.typing import NDArray
 
-from solver.wing.planform import Lattice
+from solver.wing.lattice import Lattice
 
 FloatArray = NDArray[np.float64]
 

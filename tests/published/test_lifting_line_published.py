@@ -14,7 +14,8 @@ import numpy as np
 import pytest
 
 from solver.wing.forces import pitching_moment, station_forces, trefftz_drag
-from solver.wing.planform import TaperedSurface, lattice
+from solver.wing.lattice import lattice
+from solver.wing.planform import TaperedSurface
 from solver.wing.stall import room
 from tests.published.tables import numbers, rows
 from tests.wing_cases import (

@@ -7,7 +7,8 @@ import pytest
 
 from solver.aircraft.landing import stall_onset
 from solver.aircraft.speed import level_flight
-from solver.aircraft.trim import Load, trim
+from solver.aircraft.load import Load
+from solver.aircraft.trim import trim
 from tests.aircraft_cases import DENSITY, VISCOSITY, load, small_aircraft
 
 FORCES = np.array([25.0, 40.0, 60.0])

@@ -12,9 +12,11 @@ from solver.section.packing import pack_polars
 from solver.section.polar import polar_from_functions
 from solver.wing.forces import trefftz_drag
 from solver.wing.influence import influence
-from solver.wing.lifting_line import StationPolars, linearise, solve
-from solver.wing.planform import TaperedSurface, lattice
+from solver.wing.lattice import lattice
+from solver.wing.lifting_line import linearise, solve
+from solver.wing.planform import TaperedSurface
 from solver.wing.stall import follow, room, stalling_range
+from solver.wing.station_polars import StationPolars
 from tests.wing_cases import EllipticSurface, ExactSections, coefficients, flow_over
 
 STALL = np.radians(16.0)
