@@ -6,8 +6,8 @@ import numpy as np
 import pytest
 
 from solver.aircraft.landing import stall_onset
-from solver.aircraft.speed import level_flight
 from solver.aircraft.load import Load
+from solver.aircraft.speed import level_flight
 from solver.aircraft.trim import trim
 from tests.aircraft_cases import DENSITY, VISCOSITY, load, small_aircraft
 
