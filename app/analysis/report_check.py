@@ -28,7 +28,7 @@ class TableError:
     Fields
     ------
     flights : int
-        How many random flights were compared.
+        How many random flights were compared: those that both found.
     drag, lift_to_drag : float
         Of the value itself.
     parts : float
@@ -75,7 +75,7 @@ def table_error(
     Returns
     -------
     TableError
-        NaN where a flight of the table was not found.
+        Over the flights that both the table and the full solve found.
     """
     random = np.random.default_rng(seed)
     speed, mass, altitude = (
@@ -109,7 +109,7 @@ def table_error(
     )
     limit = read.limit[:, flown]
     return TableError(
-        flights=int(flown.sum()),
+        flights=int(np.sum(np.isfinite(read.drag[flown] / drag))),
         drag=_worst(read.drag[flown] / drag - 1.0),
         lift_to_drag=_worst(read.lift_to_drag[flown] * drag / weight[flown] - 1.0),
         parts=_worst((read.parts[:, flown] - parts) / drag),
@@ -122,4 +122,5 @@ def table_error(
 
 
 def _worst(errors: FloatArray) -> float:
-    return 100.0 * float(np.max(np.abs(errors), initial=0.0))
+    found = errors[np.isfinite(errors)]
+    return 100.0 * float(np.max(np.abs(found), initial=0.0))

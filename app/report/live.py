@@ -362,6 +362,8 @@ def _error_words(able: list[Shown]) -> str:
         for key in ("drag", "lift_to_drag", "parts", "elevator", "lift", "stall_speed")
     )
     flights = sum(int(error["flights"]) for error in errors)
+    if not flights:
+        return "No flight in between was found by which the table could be checked."
     return (
         "The sliders read a table solved beforehand over lift coefficient and speed over "
         f"viscosity. Against {flights} full solves at random places in between, the largest "
