@@ -7,7 +7,9 @@ from bokeh.models import ColumnDataSource
 
 from app.analysis.results import BalanceResult, Results
 from app.figures import look, words
-from app.figures.plot import Label, Labels, Plot, TrustLine, add_reading, fit, new_figure
+from app.figures.labels import Label, Labels
+from app.figures.plot import Plot, TrustLine, add_reading, new_figure
+from app.figures.ranges import fit
 from app.figures.speed_marks import SpeedMarks
 
 

@@ -7,7 +7,9 @@ from bokeh.models import ColumnDataSource
 
 from app.analysis.results import Results
 from app.figures import look, words
-from app.figures.plot import Labels, Plot, fit, new_figure
+from app.figures.labels import Labels
+from app.figures.plot import Plot, new_figure
+from app.figures.ranges import fit
 
 _ROWS = ("cruise", "landing", "launch", "stall")
 

@@ -7,7 +7,9 @@ from bokeh.models import ColumnDataSource
 
 from app.analysis.results import Results, SpanResult, Trust
 from app.figures import look
-from app.figures.plot import Labels, Plot, TrustLine, fit, new_figure
+from app.figures.labels import Labels
+from app.figures.plot import Plot, TrustLine, new_figure
+from app.figures.ranges import fit
 from app.figures.span_plots import ACROSS, CONDITION_WORDS, condition_colour, fit_to_span, label_on
 from app.figures.station import Station, half_span
 

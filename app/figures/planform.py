@@ -7,7 +7,9 @@ from bokeh.models import ColumnDataSource
 
 from app.analysis.results import PlanformResult, Results
 from app.figures import look, words
-from app.figures.plot import Label, Labels, Plot, fit, keep_to_scale, new_figure
+from app.figures.labels import Label, Labels
+from app.figures.plot import Plot, new_figure
+from app.figures.ranges import fit, keep_to_scale
 from app.figures.station import Station, chord_ends, half_span
 
 

@@ -7,7 +7,9 @@ from bokeh.models import ColumnDataSource
 
 from app.analysis.results import Results, SectionResult
 from app.figures import look
-from app.figures.plot import DASHES, Labels, add_reading, fit, new_figure, split_by_trust
+from app.figures.labels import Labels
+from app.figures.plot import DASHES, add_reading, new_figure, split_by_trust
+from app.figures.ranges import fit
 from app.figures.section_plots import CONDITIONS, SectionPlot, on_wing
 from app.figures.station import Station
 

@@ -12,15 +12,8 @@ from bokeh.plotting import figure
 
 from app.analysis.results import FloatArray, PolarCurve, Results, SectionResult, Trust
 from app.figures import look, words
-from app.figures.plot import (
-    DASHES,
-    Plot,
-    add_reading,
-    fit,
-    keep_to_scale,
-    new_figure,
-    split_by_trust,
-)
+from app.figures.plot import DASHES, Plot, add_reading, new_figure, split_by_trust
+from app.figures.ranges import fit, keep_to_scale
 from app.figures.station import Station
 
 CONDITIONS = ("cruise", "landing")

@@ -8,7 +8,9 @@ from bokeh.plotting import figure
 
 from app.analysis.results import Results, SpanResult, Trust
 from app.figures import look, words
-from app.figures.plot import Labels, Plot, TrustLine, add_reading, fit, new_figure
+from app.figures.labels import Labels
+from app.figures.plot import Plot, TrustLine, add_reading, new_figure
+from app.figures.ranges import fit
 from app.figures.section_plots import on_wing
 from app.figures.station import Station, half_span
 

@@ -9,7 +9,8 @@ from bokeh.plotting import figure
 
 from app.analysis.results import Results
 from app.figures import look
-from app.figures.plot import Labels, bounds
+from app.figures.labels import Labels
+from app.figures.ranges import bounds
 
 _SPEEDS = (
     # The landing speed is never above the cruise speed: words stand outside the two.

@@ -10,7 +10,9 @@ from bokeh.models import ColumnDataSource
 
 from app.analysis.results import FloatArray, Margin, Results, SweepResult, Trust
 from app.figures import look, words
-from app.figures.plot import Label, Labels, Plot, TrustLine, add_reading, fit, new_figure
+from app.figures.labels import Label, Labels
+from app.figures.plot import Plot, TrustLine, add_reading, new_figure
+from app.figures.ranges import fit
 from app.figures.speed_marks import SpeedMarks
 
 SPEED = "true airspeed [m/s]"

@@ -12,7 +12,8 @@ from app.figures import look, words
 from app.figures.plot import new_figure
 from app.report.charts import Charts
 from app.report.markup import Html, join, table, tag
-from app.report.order import Order, Shown
+from app.report.order import LETTERS, Order, Shown
+from app.report.parts import trusted
 
 READINGS = (
     ("speed_ratio", "This speed over stall speed", ""),
@@ -52,8 +53,8 @@ LEGEND: dict[str, Any] = {
     "label_text_font_size": look.token("plot-text"),
     "padding": 2,
     "margin": 4,
-    "spacing": 10,
-    "glyph_width": 26,
+    "spacing": 6,
+    "glyph_width": 22,
 }
 
 
@@ -99,7 +100,7 @@ class Live:
                 "div",
                 tag("div", self._sliders(), self._readings(), cls="live-side"),
                 tag("div", [plot_place(name) for name in plots], cls="live-plots"),
-                cls="live",
+                cls="live many" if len(self.able) > 2 else "live",
             ),
             tag("p", _error_words(self.able), cls="note"),
         )
@@ -240,6 +241,9 @@ class Live:
     def _compare_plots(self) -> list[str]:
         first = self.able[0]
         ratio = _over_speed("Lift to drag over speed", "lift to drag [-]", first)
+        reaches = [_reach(one, "speed") for one in self.able]
+        ends = min(low for low, _ in reaches), max(high for _, high in reaches)
+        ratio.x_range.update(start=ends[0], end=ends[1])
         room = new_figure(
             "live-room",
             "Local lift over its limit, at this speed",
@@ -250,7 +254,9 @@ class Live:
         )
         room.hspan(y=[1.0], line_color=look.colour("limit"), line_width=look.THICK)
         for at, one in enumerate(self.able):
-            colour, dash = look.colour(COLOURS[at]), DASHES[at]
+            # Its own colour and dash, the same as in the other plots.
+            place = LETTERS.index(one.letter)
+            colour, dash = look.colour(COLOURS[place]), DASHES[place]
             source = self._source(f"live-{at}-data", ("x", "lift_to_drag", "share", "used"))
             style: dict[str, Any] = {"line_color": colour, "line_dash": dash, "line_width": 2.5}
             line = ratio.line("x", "lift_to_drag", source=source, legend_label=one.letter, **style)
@@ -324,8 +330,7 @@ def _slider(
 
 def _designed(one: Shown, key: str, unit: str) -> str:
     results = one.results
-    cruise, landing, sweep = results.cruise, results.landing, results.sweep
-    del sweep
+    cruise, landing = results.cruise, results.landing
     found = {
         "speed_ratio": cruise.speed_m_s / landing.stall_speed_m_s,
         "stall": landing.stall_speed_m_s,
@@ -336,7 +341,12 @@ def _designed(one: Shown, key: str, unit: str) -> str:
         "elevator": cruise.elevator_deg,
         "endurance": next((m.value for m in results.margins if m.key == "endurance"), math.nan),
     }
-    return words.number(found[key], unit) if key in found else ""
+    if key not in found:
+        return ""
+    trust = landing.trust if key in ("stall", "landing_ratio") else cruise.trust
+    if key == "speed_ratio":
+        trust = max(landing.trust, cruise.trust)
+    return trusted(words.number(found[key], unit), trust)
 
 
 def _introduction(order: Order, able: list[Shown]) -> str:

@@ -13,7 +13,8 @@ from bokeh.plotting import figure
 
 from app.analysis.results import FloatArray, Results, SweepResult, TrustArray
 from app.figures import look
-from app.figures.plot import TrustLine, fit, keep_to_scale, new_figure
+from app.figures.plot import TrustLine, new_figure
+from app.figures.ranges import fit, keep_to_scale
 from app.figures.station import half_span
 from app.report.charts import Charts, drawing_height
 from app.report.live import COLOURS, DASHES, LEGEND
@@ -91,6 +92,7 @@ def _planforms(charts: Charts, order: Order) -> str:
         )
         rows.append((one.letter, [lines, mark]))
     _legend(plot, rows)
+    plot.legend.location = "bottom_right"
     return charts.add(plot, "planforms", height=drawing_height(half, bottom))
 
 
@@ -185,4 +187,5 @@ def _done(
 
 def _legend(plot: figure, rows: list[tuple[str, Lines]]) -> None:
     items = [LegendItem(label=label, renderers=list(lines)) for label, lines in rows]
-    plot.add_layout(Legend(items=items, **LEGEND))
+    style = LEGEND if len(items) <= 4 else {**LEGEND, "glyph_width": 15, "spacing": 3}
+    plot.add_layout(Legend(items=items, **style))

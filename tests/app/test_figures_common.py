@@ -13,7 +13,8 @@ from hypothesis import strategies as st
 
 from app.analysis.results import Trust
 from app.figures import look, words
-from app.figures.plot import DASHES, NAMES, bounds, fit, split_by_trust
+from app.figures.plot import DASHES, NAMES, split_by_trust
+from app.figures.ranges import bounds, fit
 from app.figures.station import Station, chord_ends, station_columns
 from tests.app.sample_results import make_results
 

@@ -16,7 +16,8 @@ from app.figures.balance_plots import ChordRuler, ElevatorOverSpeed
 from app.figures.landing_plots import SpeedsOnOneAxis
 from app.figures.loading import Loading
 from app.figures.planform import PlanformDrawing
-from app.figures.plot import Plot, bounds
+from app.figures.plot import Plot
+from app.figures.ranges import bounds
 from app.figures.section_limits import LargestLift
 from app.figures.section_plots import LiftOverAngle, LiftOverDrag, MomentOverAngle, OutlineDrawing
 from app.figures.span_plots import LocalLift, ReynoldsAlongSpan, RoomAlongSpan
