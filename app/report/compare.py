@@ -121,10 +121,10 @@ def _wing_numbers(order: Order) -> Html:
         ("Aspect ratio", lambda r: words.number(r.planform.aspect_ratio)),
         ("Mean aerodynamic chord", lambda r: words.number(1e3 * r.planform.mean_chord_m, "mm")),
         ("Wing loading", lambda r: words.number(r.planform.wing_loading_n_m2, "N/m²")),
-        ("Stall speed in trim", lambda r: words.number(r.landing.stall_speed_m_s, "m/s")),
+        ("Stall speed in trim", parts.stall_words),
         ("Stall begins", lambda r: r.landing.onset_words),
-        ("Lift to drag in cruise", lambda r: words.number(r.cruise.lift_to_drag)),
-        ("Power in cruise", lambda r: words.number(r.cruise.electric_power_w, "W")),
+        ("Lift to drag in cruise", lambda r: parts.cruise_words(r, r.cruise.lift_to_drag)),
+        ("Power in cruise", lambda r: parts.cruise_words(r, r.cruise.electric_power_w, "W")),
     )
     rows: list[list[Part]] = [
         [label, *[value(one.results) for one in order.shown]] for label, value in listed

@@ -247,7 +247,8 @@ def _drawn(content: dict[str, Any]) -> bytes:
     }
     try:
         done = subprocess.run(
-            [sys.executable, "-m", "app.report"],
+            # -P: a folder named app where the user happens to be is not ours.
+            [sys.executable, "-P", "-m", "app.report"],
             input=json.dumps(content, allow_nan=False).encode(),
             capture_output=True,
             env=environment,

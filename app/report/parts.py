@@ -170,6 +170,24 @@ def inputs(shown: Shown) -> Html:
     )
 
 
+def trusted(text: str, trust: Trust) -> str:
+    """Say beside a value how far it can be believed; one that was not found is none."""
+    if trust == Trust.NOT_CONVERGED or text == words.NOT_FOUND:
+        return words.NOT_FOUND
+    return text if trust == Trust.VALID else f"{text}, {TRUST[trust]}"
+
+
+def stall_words(results: Results) -> str:
+    """Write the stall speed, and how far it can be believed."""
+    landing = results.landing
+    return trusted(words.number(landing.stall_speed_m_s, "m/s"), landing.trust)
+
+
+def cruise_words(results: Results, value: float, unit: str = "") -> str:
+    """Write a value of the cruise, and how far it can be believed."""
+    return trusted(words.number(value, unit), results.cruise.trust)
+
+
 def planform_facts(results: Results) -> Html:
     """List what the planform amounts to."""
     plan, landing = results.planform, results.landing
@@ -180,13 +198,13 @@ def planform_facts(results: Results) -> Html:
             ("Mean aerodynamic chord", words.number(1e3 * plan.mean_chord_m, "mm")),
             ("Wing loading", words.number(plan.wing_loading_n_m2, "N/m²")),
             ("Tail volume", words.number(plan.tail_volume)),
-            ("Stall speed in trim", words.number(landing.stall_speed_m_s, "m/s")),
+            ("Stall speed in trim", stall_words(results)),
             (
                 "Its band",
                 words.span_of(landing.stall_speed_low_m_s, landing.stall_speed_high_m_s, "m/s"),
             ),
             ("Stall begins", landing.onset_words),
-            ("Lift to drag in cruise", words.number(results.cruise.lift_to_drag)),
+            ("Lift to drag in cruise", cruise_words(results, results.cruise.lift_to_drag)),
             ("Air density at the field", words.number(results.air.density_kg_m3, "kg/m³")),
         ]
     )
