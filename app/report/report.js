@@ -322,7 +322,7 @@
     document.querySelectorAll("details").forEach((one) => { one.open = true })
     for (const place of document.querySelectorAll(".plot")) {
       const drawn = place.firstElementChild
-      const target = place.matches(".wide, .live-plots > *") ? PAGE : (PAGE - GAP) / 2
+      const target = place.matches(".wide, .live:not(.many) .plot") ? PAGE : (PAGE - GAP) / 2
       const size = drawn.getBoundingClientRect()
       if (!size.width) continue
       drawn.style.setProperty("width", `${size.width}px`)
