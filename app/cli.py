@@ -300,10 +300,14 @@ def _demo(arguments: argparse.Namespace) -> int:
 
 
 def _open(arguments: argparse.Namespace) -> int:
-    return _serve(arguments.file, arguments)
+    from app.report.read import is_report
+
+    own = None if is_report(arguments.file) else arguments.file
+    return _serve(arguments.file, arguments, own=own)
 
 
-def _serve(file: str, arguments: argparse.Namespace) -> int:
+def _serve(file: str, arguments: argparse.Namespace, *, own: str | None = None) -> int:
+    """Show a scenario; `own` is the file that the page may save to."""
     start_log(arguments.log_level)
     scenario = _scenario(file, getattr(arguments, "scenario", 1))
     if blamed := _unusable_section(scenario.freeze(), file):
@@ -324,6 +328,7 @@ def _serve(file: str, arguments: argparse.Namespace) -> int:
             port=arguments.port,
             open_browser=not arguments.no_browser,
             ready=ready,
+            file=own,
             **chosen,
         )
     except OSError as error:

@@ -27,29 +27,33 @@ def _script(name: str) -> str:
 class Part(JSComponent):
     """What all parts share: the look, and messages that are always answered."""
 
-    _stylesheets: ClassVar[list[str]] = [static_text("page.css")]
+    _stylesheets: ClassVar[list[str]] = [static_text("page.css"), static_text("session.css")]
 
     def __init__(
-        self, on_message: Callable[[Message], None] | None = None, **params: object
+        self, on_message: Callable[[Message], object] | None = None, **params: object
     ) -> None:
         self._on_message = on_message
         super().__init__(**params)  # type: ignore[no-untyped-call]
 
     def _handle_msg(self, message: Message) -> None:
         # One message to the browser for all that changes, and the answer with it.
+        reply: dict[str, object] = {"done": message.get("seq")}
         with pn.io.hold():
             try:
-                if self._on_message is not None:
-                    self._on_message(message)
+                answer = self._on_message(message) if self._on_message is not None else None
+                if answer is not None:
+                    reply["answer"] = answer
             finally:
-                self._send_msg({"done": message.get("seq")})
+                self._send_msg(reply)
 
 
 class Strip(Part):
-    """Name, margins and the reason."""
+    """Name and what can be done with the whole, margins, the reason; the hash in the address."""
 
     data = param.Dict(default={})
-    _esm = _script("strip.js")
+    header = param.Dict(default={})
+    digest = param.String(default="")
+    _esm = static_text("dom.js") + static_text("header.js") + static_text("strip.js")
 
 
 class Tabs(Part):

@@ -8,7 +8,7 @@ from typing import Any
 
 from app.analysis.results import Margin
 from app.figures import words
-from app.scenario import Field, Scenario
+from app.scenario import Field
 from app.sheets.sheet import FieldGroup
 from solver.errors import InputError
 
@@ -137,27 +137,3 @@ def station_words(row: Mapping[str, Any]) -> str:
         f"Re {words.reynolds(1e3 * row['re_landing'])}, "
         f"lift {words.number(row['lift_landing'])} of {words.number(row['limit_landing'])}"
     )
-
-
-def own_copy(scenario: Scenario) -> Scenario:
-    """Copy a scenario, so that two tabs do not move each other's sliders.
-
-    Parameters
-    ----------
-    scenario : Scenario
-        What to copy; its tables are shared, since nothing changes them.
-
-    Returns
-    -------
-    Scenario
-        Equal in every value.
-    """
-    copy = Scenario(
-        name=scenario.name,
-        author=scenario.author,
-        note=scenario.note,
-        sections=dict(scenario.sections),
-        folder=scenario.folder,
-    )
-    copy.set_values(scenario.values())
-    return copy

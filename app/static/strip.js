@@ -40,12 +40,10 @@ function tile(margin, chosen, open) {
 
 export function render({model}) {
   const sender = new Sender(model)
-  const name = node("h1", {})
-  const note = node("p", {class: "note"})
+  const header = makeHeader(model)
   const tiles = node("div", {class: "tiles", role: "group", "aria-label": "Margins"})
   const reason = node("p", {class: "reason"})
   const notice = node("p", {class: "notice", role: "alert"})
-  const solving = node("span", {class: "solving", role: "status"})
   const open = (key) => sender.send({open: key})
 
   const fillTiles = once((data) => {
@@ -68,25 +66,16 @@ export function render({model}) {
   })
   const show = () => {
     const data = model.data
-    name.textContent = data.name
-    note.textContent = data.note
-    note.title = data.note
     fillTiles({margins: data.margins, chosen: data.chosen})
     fillReason({reason: data.reason, reason_title: data.reason_title, chosen: data.chosen})
     notice.textContent = data.notice
     notice.hidden = data.notice === ""
   }
-  window.addEventListener("halfspan-solving", (event) => {
-    solving.textContent = {
-      ready: "",
-      solving: "solving",
-      lost: "The program does not answer. When it runs again, reload the page.",
-    }[event.detail]
-  })
   model.on("data", show)
   show()
   return node("div", {class: "head"},
-    node("header", {}, node("p", {class: "mark"}, "Halfspan", solving), name, note),
+    header.title,
     tiles,
-    node("div", {class: "said"}, reason, notice))
+    header.ask,
+    node("div", {class: "said"}, reason, notice, header.done))
 }

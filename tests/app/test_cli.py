@@ -239,8 +239,8 @@ class Served:
         self.asked: list[tuple[str, object, object]] = []
         self.error: BaseException | None = None
 
-    def serve(self, scenario, *, port, open_browser, ready, journal=None):
-        self.journal = journal
+    def serve(self, scenario, *, port, open_browser, ready, file, journal=None):
+        self.journal, self.file = journal, file
         self.asked.append((scenario.name, port, open_browser))
         if self.error is not None:
             raise self.error
@@ -257,6 +257,7 @@ def served(monkeypatch):
 def test_open_serves_the_file_and_prints_the_address(served, capsys):
     assert cli.main(["open", TARN_RIDGE, "--port", "5006", "--no-browser"]) == cli.DONE
     assert served.asked == [("Tarn Ridge 18", 5006, False)]
+    assert served.file == TARN_RIDGE
     assert "Tarn Ridge 18 at http://127.0.0.1:5006/" in capsys.readouterr().out
 
 
@@ -269,6 +270,7 @@ def test_options_before_the_command_count_too(served):
 def test_without_a_command_the_demo_is_served(served):
     assert cli.main([]) == cli.DONE
     assert served.asked == [("Heronsgill 24", 0, True)]
+    assert served.file is None  # the example is nobody's to overwrite
 
 
 def test_the_journal_is_where_it_is_said_to_be(served, tmp_path):

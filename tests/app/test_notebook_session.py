@@ -8,11 +8,13 @@ import pytest
 from bokeh.document import Document
 
 from app import notebook
-from app.notebook import NOTHING, WRONG, Session
-from app.page_state import margin_tile, own_copy
+from app.page_state import margin_tile
 from app.scenario import Scenario
+from app.session import NOTHING, WRONG, Session
+from app.workspace import Workspace
 from solver.errors import InputError
-from tests.app.sample_results import SampleAnalysis, make_results, with_nothing_found
+from tests.app.page_session import made_workspace
+from tests.app.sample_results import make_results, with_nothing_found
 
 
 def scenario() -> Scenario:
@@ -22,8 +24,13 @@ def scenario() -> Scenario:
 
 
 @pytest.fixture
-def session() -> Session:
-    return Session(scenario(), SampleAnalysis())
+def workspace(tmp_path) -> Workspace:
+    return made_workspace(scenario(), tmp_path)
+
+
+@pytest.fixture
+def session(workspace) -> Session:
+    return Session(workspace.scenario.copy(), workspace)
 
 
 def send(session: Session, **values: object) -> None:
@@ -130,10 +137,10 @@ def test_every_message_is_answered_even_after_an_error(session, monkeypatch):
     assert answers == [{"done": 7}, {"done": 8}]
 
 
-def test_nothing_solved_at_the_start_is_said_and_can_be_mended():
-    analysis = SampleAnalysis()
+def test_nothing_solved_at_the_start_is_said_and_can_be_mended(workspace):
+    analysis = workspace.analysis
     analysis.error = RuntimeError("boom")
-    session = Session(scenario(), analysis)
+    session = Session(scenario(), workspace)
     assert session.strip.data["notice"] == NOTHING
     assert shown(session, "span_m") == 2.4
     analysis.error = None
@@ -193,17 +200,20 @@ def test_inputs_beside_the_sheet_change_with_it(session):
     assert titles[0] == others[0] == "Mission"
 
 
-def test_the_cautions_are_at_the_foot(session):
+def test_the_cautions_are_at_the_foot_and_what_is_odd_before_them(session):
     assert session.footer.sentences == list(session.results.cautions)
+    send(session, airspeed_error_m_s=0.0)
+    first, *rest = session.footer.sentences
+    assert first.startswith("An airspeed error of 0")
+    assert rest == list(session.results.cautions)
 
 
-def test_two_sessions_share_no_value():
-    origin = scenario()
-    first, second = own_copy(origin), own_copy(origin)
-    first.set_values({"span_m": 1.9})
-    assert second.wing.span_m == origin.wing.span_m == 2.4
-    assert first.freeze() != second.freeze()
-    assert second.freeze() == origin.freeze()
+def test_two_sessions_share_no_value(workspace):
+    first, second = (Session(workspace.start("").scenario, workspace) for _ in range(2))
+    send(first, span_m=1.9)
+    assert first.scenario.wing.span_m == 1.9
+    assert second.scenario.wing.span_m == workspace.scenario.wing.span_m == 2.4
+    assert second.scenario.freeze() == workspace.scenario.freeze()
 
 
 def test_a_tile_says_value_limit_margin_and_verdict():
@@ -223,15 +233,15 @@ def test_a_tile_without_a_value_says_so_and_draws_nothing():
     assert tile["at"] is tile["low"] is tile["high"] is None
 
 
-def test_the_page_fits_one_document():
+def test_the_page_fits_one_document(session):
     document = Document()
-    Session(scenario(), SampleAnalysis()).layout().server_doc(document)
+    session.layout().server_doc(document)
     assert len(document.roots) >= 1
     document.validate()
 
 
-def test_the_server_listens_on_this_computer_and_for_its_own_page_only():
-    server = notebook.make_server(scenario(), port=0, analysis=SampleAnalysis())
+def test_the_server_listens_on_this_computer_and_for_its_own_page_only(workspace):
+    server = notebook.make_server(workspace, port=0)
     try:
         assert server.address == "127.0.0.1"
         assert server._tornado._websocket_origins == {f"127.0.0.1:{server.port}"}

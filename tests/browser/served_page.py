@@ -7,6 +7,7 @@ which the analysis misbehaves on purpose, to see what the page makes of it.
 from __future__ import annotations
 
 import sys
+import tempfile
 import time
 from pathlib import Path
 
@@ -44,7 +45,15 @@ def main() -> None:
         sys.stdout.write(f"{address}\n")
         sys.stdout.flush()
 
-    serve(scenario, open_browser=False, ready=ready, analysis=MisbehavingAnalysis())
+    with tempfile.TemporaryDirectory(prefix="halfspan-test-") as folder:
+        serve(
+            scenario,
+            open_browser=False,
+            ready=ready,
+            analysis=MisbehavingAnalysis(),
+            journal=Path(folder) / "journal",
+            states=Path(folder) / "states",
+        )
 
 
 if __name__ == "__main__":
