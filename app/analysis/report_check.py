@@ -8,7 +8,8 @@ import numpy as np
 from numpy.typing import NDArray
 
 from app.analysis.aircraft_stage import GRAVITY
-from app.analysis.report_table import FlightTable, own_load, solved_flights
+from app.analysis.report_reading import FlightTable
+from app.analysis.report_table import own_load, solved_flights
 from app.inputs import Inputs
 from solver.aircraft.configuration import Aircraft
 from solver.aircraft.landing import stall_onset

@@ -8,7 +8,8 @@ from typing import Any
 import numpy as np
 
 from app.analysis.report_check import TableError, table_error
-from app.analysis.report_table import COLUMNS, FlightTable, drive_numbers, flight_table
+from app.analysis.report_reading import FlightTable
+from app.analysis.report_table import COLUMNS, drive_numbers, flight_table
 from app.analysis.results import Results
 from app.analysis.stages import EXTRAS, Analysis, drive_of
 from app.inputs import Inputs
