@@ -15,10 +15,11 @@ import shutil
 import sys
 from collections.abc import Sequence
 from contextlib import suppress
-from pathlib import Path
-from typing import TYPE_CHECKING, NoReturn
+from typing import TYPE_CHECKING
 
-from app.log import LEVELS, log_file, start_log
+from app.cli_options import parser
+from app.log import log_file, start_log
+from app.version import version
 
 if TYPE_CHECKING:
     from app.analysis.results import Results
@@ -28,31 +29,6 @@ if TYPE_CHECKING:
 DONE, FAILS, UNUSABLE, BROKEN = 0, 1, 2, 3
 INTERRUPTED, NOBODY_READS = 130, 141
 """What a shell reports for a command ended by Ctrl-C or a closed pipe."""
-
-DESCRIPTION = """\
-Halfspan helps to choose the wing of a small fixed-wing drone: from mass, speeds
-and field to drag, trim, stall and the margins that decide.
-
-Without a command it opens the notebook in the browser, on the demo scenario.
-"""
-
-EPILOG = """\
-examples:
-  halfspan                          the notebook on the demo scenario
-  halfspan open my-drone.toml       the notebook on your own scenario
-  halfspan solve my-drone.toml      its margins, as text
-  halfspan solve my-drone.toml --json | jq .margins
-  halfspan report my-drone.toml --output my-drone.html
-  halfspan fields                   every input with unit, range, default, help
-
-exit status:
-  0  done; with solve: no requirement fails
-  1  solve: at least one requirement fails
-  2  the command or the scenario file is unusable; one sentence says why
-  3  something inside went wrong; the sentence names the log file
-
-The notebook listens on this computer only and asks nothing of the internet.
-"""
 
 
 class UnusableError(Exception):
@@ -84,6 +60,18 @@ def main(argv: Sequence[str] | None = None) -> int:
         return NOBODY_READS
     except KeyboardInterrupt:
         return INTERRUPTED
+
+
+def _parser() -> argparse.ArgumentParser:
+    return parser(
+        {
+            "notebook": _demo,
+            "open": _open,
+            "solve": _solve,
+            "report": _report,
+            "fields": _fields,
+        }
+    )
 
 
 def pin_threads() -> None:
@@ -122,165 +110,6 @@ def _written_down(error: Exception, level: str) -> str:
     kind = type(error).__name__
     where = f"it is written down in {path}" if path else f"{log_file()} could not be written"
     return f"something inside went wrong ({kind}), which is a fault of Halfspan; {where}"
-
-
-def _parser() -> argparse.ArgumentParser:
-    shape = argparse.RawDescriptionHelpFormatter
-    parser = argparse.ArgumentParser(
-        prog="halfspan", description=DESCRIPTION, epilog=EPILOG, formatter_class=shape
-    )
-    parser.add_argument("--version", action=_Version, nargs=0, help="print the version and end")
-    parser.set_defaults(action=_demo)
-    _add_page_options(parser, port=0, no_browser=False, journal=None, log_level="info")
-    commands = parser.add_subparsers(title="commands", metavar="COMMAND")
-
-    unset = argparse.SUPPRESS
-    opening = commands.add_parser(
-        "open",
-        help="open the notebook on a scenario file, or on a report",
-        description=(
-            "Open the notebook in the browser on a scenario file, or on the scenario that rides "
-            "inside a report."
-        ),
-    )
-    opening.add_argument("file", metavar="FILE", help="a scenario, as TOML, or a report")
-    opening.add_argument(
-        "--scenario",
-        type=int,
-        default=1,
-        metavar="N",
-        help="which scenario of a report that compares several, from 1",
-    )
-    _add_page_options(opening, port=unset, no_browser=unset, journal=unset, log_level=unset)
-    opening.set_defaults(action=_open)
-
-    solving = commands.add_parser(
-        "solve",
-        help="print the margins of a scenario file",
-        description=(
-            "Solve a scenario and print each requirement with its value, limit, margin and "
-            "verdict, then the reasons, the main figures and what to be careful about."
-        ),
-        epilog="Exits with 1 when a requirement fails, with 2 when the file is unusable.",
-    )
-    solving.add_argument("file", metavar="FILE", help="a scenario, as TOML")
-    solving.add_argument(
-        "--json",
-        action="store_true",
-        help="print one JSON object instead; its keys carry their units (docs/command-line.md)",
-    )
-    _add_log_level(solving, unset)
-    solving.set_defaults(action=_solve)
-
-    _add_report(commands)
-
-    listing = commands.add_parser(
-        "fields",
-        help="list every input of a scenario",
-        description="List every input of a scenario with its unit, range, default and meaning.",
-    )
-    _add_log_level(listing, unset)
-    listing.set_defaults(action=_fields)
-    return parser
-
-
-def _add_report(commands: argparse._SubParsersAction[argparse.ArgumentParser]) -> None:
-    reporting = commands.add_parser(
-        "report",
-        help="write a report: one HTML file that opens without Halfspan or a network",
-        description=(
-            "Write a report on a scenario, or one that compares two to six: one HTML file that "
-            "opens from a disk, without Halfspan and without a network."
-        ),
-    )
-    reporting.add_argument("files", metavar="FILE", nargs="+", help="a scenario, as TOML")
-    reporting.add_argument("--output", metavar="OUT.html", required=True, help="where to")
-    reporting.add_argument("--title", default="", help="instead of the scenario's name")
-    reporting.add_argument("--author", default="", help="instead of the scenario's author")
-    reporting.add_argument("--note", default="", help="instead of the scenario's note")
-    _add_log_level(reporting, argparse.SUPPRESS)
-    reporting.set_defaults(action=_report)
-
-
-def _add_page_options(
-    parser: argparse.ArgumentParser,
-    *,
-    port: object,
-    no_browser: object,
-    journal: object,
-    log_level: object,
-) -> None:
-    parser.add_argument(
-        "--port",
-        type=_port,
-        default=port,
-        metavar="N",
-        help="port of the notebook on 127.0.0.1, 1 to 65535; without it, a free one",
-    )
-    parser.add_argument(
-        "--no-browser",
-        action="store_true",
-        default=no_browser,
-        help="print the notebook's address and leave the browser alone",
-    )
-    parser.add_argument(
-        "--journal",
-        type=_folder,
-        default=journal,
-        metavar="DIR",
-        help="folder of the snapshots; without it, Halfspan journal among your documents",
-    )
-    _add_log_level(parser, log_level)
-
-
-def _add_log_level(parser: argparse.ArgumentParser, default: object) -> None:
-    parser.add_argument(
-        "--log-level",
-        choices=LEVELS,
-        default=default,
-        metavar="LEVEL",
-        help="what the log file keeps: debug, info (as it is), warning or error",
-    )
-
-
-def _port(text: str) -> int:
-    if not (text.isdecimal() and len(text) <= 5 and 1 <= int(text) <= 65535):
-        raise argparse.ArgumentTypeError(f"must be a number from 1 to 65535; got {text[:40]!r}")
-    return int(text)
-
-
-def _folder(text: str) -> Path:
-    path = Path(text)
-    usable = False
-    if text.strip() and "\0" not in text:
-        with suppress(OSError):
-            nearest = next(one for one in (path, *path.absolute().parents) if one.exists())
-            usable = nearest.is_dir()
-    if not usable:
-        raise argparse.ArgumentTypeError(f"must be a folder, or a new one; got {text[:200]!r}")
-    return path
-
-
-class _Version(argparse.Action):
-    """Print the version; a class so that it is looked up only when asked for."""
-
-    def __call__(self, parser: argparse.ArgumentParser, *_rest: object) -> NoReturn:
-        print(f"halfspan {version()}")
-        parser.exit()
-
-
-def version() -> str:
-    """Halfspan's version, as installed or as the project file next door states it."""
-    from importlib.metadata import PackageNotFoundError
-    from importlib.metadata import version as installed
-
-    try:
-        return installed("halfspan")
-    except PackageNotFoundError:
-        import tomllib
-
-        project = Path(__file__).resolve().parent.parent / "pyproject.toml"
-        return str(tomllib.loads(project.read_text(encoding="utf-8"))["project"]["version"])
 
 
 def _scenario(file: str, number: int = 1) -> Scenario:

@@ -119,7 +119,7 @@ def serve(
         from app.analysis.stages import Analysis
 
         analysis = Analysis()
-    from app.cli import version
+    from app.version import version
 
     workspace = Workspace(
         opened,

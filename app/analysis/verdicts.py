@@ -106,6 +106,11 @@ def wing_loading_sentence(inputs: Inputs, *, area: float, density: float) -> str
     return f"The wing carries {loading:.0f} N/m² in air of {density:.3f} kg/m³."
 
 
+def signed(value: float) -> str:
+    """One decimal with its sign, a minus where it is one."""
+    return f"{value:+.1f}".replace("-", "−")
+
+
 def ways_out(ratio: Ratio, brief: BriefInputs, *, speed: float, limit: float) -> str:
     """Smallest change of speed or mass that restores a speed ratio, to first order."""
     if np.isnan(ratio.value) or ratio.value >= limit:
@@ -113,7 +118,7 @@ def ways_out(ratio: Ratio, brief: BriefInputs, *, speed: float, limit: float) ->
     more_speed = speed * (limit / ratio.value - 1.0)
     lighter = brief.mass_kg * (1.0 - (ratio.value / limit) ** 2)
     return (
-        f"{more_speed:.1f} m/s more, or about {lighter:.2f} kg less or the same share "
+        f"{more_speed:.2g} m/s more, or about {lighter:.2g} kg less or the same share "
         f"({100 * ((limit / ratio.value) ** 2 - 1.0):.0f} %) more wing area, would restore it."
     )
 
@@ -293,7 +298,7 @@ def _elevator_left(
         asked,
         left[worst],
         doubts=tuple(doubts),
-        explanation=f"The most is used {worst}: {used[worst]:+.1f}° of ±{travel:.0f}°.",
+        explanation=f"The most is used {worst}: {signed(used[worst])}° of ±{travel:.0f}°.",
         missing=f"No balanced flight was found {worst}: the tail cannot hold the wing.",
     )
     return margin(judgement, sheet=BALANCE)

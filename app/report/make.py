@@ -155,7 +155,7 @@ def order_content(
         If a table of a scenario cannot ride along.
     """
     from app.analysis.report_part import Analysis
-    from app.cli import version
+    from app.version import version
 
     analysis = Analysis()
     first = scenarios[0][0]

@@ -45,7 +45,8 @@ class Requirement:
         """Put a value into words with its unit."""
         gap = "" if self.unit in ("", "%") else " "
         unit = " %" if self.unit == "%" else self.unit
-        return f"{value:.{self.decimals}f}{gap}{unit}"
+        number = f"{value:.{self.decimals}f}".replace("-", "−")
+        return f"{number}{gap}{unit}"
 
 
 @dataclass(frozen=True)
