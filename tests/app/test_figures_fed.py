@@ -31,8 +31,8 @@ from app.figures.speed_plots import (
 )
 from app.figures.station import Station
 from app.figures.wing_lift import WingLift
-from app.notebook import SHEETS
 from app.scenario import field_list
+from app.session import SHEETS
 from app.sheets.sheet import BRIEF
 from tests.app.sample_results import make_results, with_nothing_found
 
