@@ -7,6 +7,7 @@ from functools import cached_property
 
 import numpy as np
 from numpy.typing import NDArray
+from scipy.interpolate import CubicSpline
 
 from app.analysis.results import (
     DragParts,
@@ -31,9 +32,11 @@ from solver.wing.stall import Room, follow, least_angle_room, room, stalling_ran
 FloatArray = NDArray[np.float64]
 TrustArray = NDArray[np.uint8]
 
-SWEEP_SPEEDS = 20
-CURVE_FROM, CURVE_STEP, CURVE_POINTS = np.radians(-4.0), np.radians(1.0), 12
-STALLED_STEP, STALLED_POINTS = np.radians(1.25), 6
+SOLVED_SPEEDS, SHOWN_SPEEDS = 11, 41
+"""Speeds solved, and speeds shown: a cubic spline through the former, where all of them
+were found and none is stalled; a test holds what it adds."""
+CURVE_FROM, CURVE_STEP, CURVE_POINTS = np.radians(-4.0), np.radians(1.0), 10
+STALLED_STEP, STALLED_POINTS = np.radians(1.5), 5
 """How the lift curve is followed from the onset of stall on."""
 SAFELY_BELOW = np.radians(1.0)
 """Distance from the onset up to which the angles need not be followed one by one [rad]."""
@@ -157,24 +160,53 @@ def sweep_result(
         Taken off the speed over ground for the range [m/s].
     """
     # Even in 1/V: close together near the stall, where the drag bends most.
-    speed = 1.0 / np.linspace(1.0 / lowest_speed, 1.0 / highest_speed, SWEEP_SPEEDS)
-    flight = level_flight(aircraft, load, speed=speed)
+    solved = 1.0 / np.linspace(1.0 / lowest_speed, 1.0 / highest_speed, SOLVED_SPEEDS)
+    flight = level_flight(aircraft, load, speed=solved)
     trust = flight_trust(flight.trimmed.state)
     trust = np.where(flight.converged, trust, Trust.NOT_CONVERGED).astype(np.uint8)
-    power = electric_power(drive, drag=flight.drag, speed=speed)
+    parts = np.stack(
+        [
+            flight.induced,
+            flight.profile,
+            flight.body,
+            flight.trim_induced + flight.trim_profile,
+            np.degrees(flight.trimmed.elevator),
+        ]
+    )
+    speed = solved
+    if np.all(trust < Trust.INDICATIVE):
+        speed = 1.0 / np.linspace(1.0 / lowest_speed, 1.0 / highest_speed, SHOWN_SPEEDS)
+        parts = CubicSpline(-1.0 / solved, parts, axis=1)(-1.0 / speed)
+        trust = trust[np.abs(solved[None, :] - speed[:, None]).argmin(axis=1)]
+    return _sweep_of(speed, parts, trust, load=load, drive=drive, headwind=headwind)
+
+
+def _sweep_of(
+    speed: FloatArray,
+    parts: FloatArray,
+    trust: TrustArray,
+    *,
+    load: Load,
+    drive: Drive,
+    headwind: float,
+) -> SweepResult:
+    """Power, time and distance that go with the parts of the drag."""
+    induced, profile, body, trimming, elevator = parts
+    drag = induced + profile + body + trimming
+    power = electric_power(drive, drag=drag, speed=speed)
     time = endurance(drive, power=power)
     distance = np.maximum(speed - headwind, 0.0) * time
     usable = trust < Trust.INDICATIVE
     return SweepResult(
         speed_m_s=speed,
-        induced=flight.induced,
-        profile=flight.profile,
-        body=np.asarray(flight.body),
-        trim=flight.trim_induced + flight.trim_profile,
-        total=flight.drag,
+        induced=induced,
+        profile=profile,
+        body=body,
+        trim=trimming,
+        total=drag,
         electric_power_w=power,
-        lift_to_drag=load.force / flight.drag,
-        elevator_deg=np.degrees(flight.trimmed.elevator),
+        lift_to_drag=load.force / drag,
+        elevator_deg=elevator,
         endurance_h=time / 3600.0,
         range_km=1e-3 * distance,
         trust=trust,

@@ -51,7 +51,7 @@ from solver.section.thin_airfoil import viscous_flap_factor
 
 NOTHING_EXTRA: frozenset[str] = frozenset()
 EXTRAS = frozenset({"sweep", "lift_curve", "trim_curve"})
-TRIM_SPEEDS = 8
+TRIM_SPEEDS = 6
 BANDS = (LOW, NOMINAL, HIGH)
 
 CAUTIONS = (

@@ -207,9 +207,9 @@ def trim_at_knee(aircraft: Aircraft, load: Load, *, band: ArrayLike = NOMINAL) -
     return _solved(problem, guess, field=None)
 
 
-SAFE_SHARE = 0.7
+SAFE_SHARE = 0.85
 """Share of the sections' largest lift from which the search for the onset starts [-]:
-below every knee for any loading that a tapered wing has."""
+close to the knee, and still below it for the loadings that tapered wings have."""
 
 
 def _largest_area(problem: Problem) -> FloatArray:
