@@ -53,6 +53,11 @@ class Strip(Part):
     data = param.Dict(default={})
     header = param.Dict(default={})
     digest = param.String(default="")
+
+    def hand_over(self, file: Message) -> None:
+        """Give the user a file that was made meanwhile."""
+        self._send_msg(dict(file))
+
     _esm = static_text("dom.js") + static_text("header.js") + static_text("strip.js")
 
 
@@ -86,6 +91,20 @@ class Choice(Part):
 
     data = param.Dict(default={"label": "", "options": [], "chosen": ""})
     _esm = _script("choice.js")
+
+
+class JournalList(Part):
+    """The snapshots of the journal, and what can be done with them."""
+
+    state = param.Dict(default={})
+    _esm = _script("journal.js")
+
+
+class ComparisonTable(Part):
+    """Two to six side by side."""
+
+    data = param.Dict(default={"columns": [], "inputs": [], "margins": []})
+    _esm = _script("comparison.js")
 
 
 class Footer(Part):

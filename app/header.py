@@ -2,25 +2,28 @@
 
 from __future__ import annotations
 
-import base64
 import io
-import re
+import logging
 import tempfile
 import zipfile
-from collections.abc import Callable, Mapping
-from datetime import datetime
+from collections.abc import Callable, Mapping, Sequence
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
 from app.autosave import AutosaveError
 from app.journal import JournalError
+from app.page_words import clock, download, file_stem
 from app.scenario_error import ScenarioError
 from app.scenario_file import text_problem
 from app.scenario_save import write_scenario
 from solver.errors import InputError
 
 if TYPE_CHECKING:
+    from app.analysis.results import Results
+    from app.scenario import Scenario
     from app.session import Session
+
+LOG = logging.getLogger(__name__)
 
 Message = Mapping[str, Any]
 Answer = dict[str, object] | None
@@ -42,7 +45,7 @@ class Header:
 
     def __init__(self, session: Session) -> None:
         self.session = session
-        self.said = ""
+        self.said = self.busy = ""
         self._overwrite = False
         self._actions: dict[str, Callable[[Message], Answer]] = {
             "step": self._step,
@@ -51,6 +54,7 @@ class Header:
             "save": self._save,
             "copy": self._copy,
             "left": self._left,
+            "report": self._report,
         }
         self.show()
 
@@ -89,7 +93,13 @@ class Header:
             "saved": keeper.is_saved,
             "left": f"You left off at {clock(left.time)} with “{left.name}”." if left else "",
             "said": self.said,
+            "busy": self.busy,
         }
+
+    def say(self, said: str) -> None:
+        """Say quietly what was done; an empty sentence says nothing more."""
+        self.said = said
+        self.show()
 
     def _step(self, message: Message) -> Answer:
         self.session.step(max(-100, min(100, int(message["step"]))))
@@ -154,6 +164,44 @@ class Header:
             return {"problem": f"{error}."}
         return download(name, data)
 
+    def _report(self, message: Message) -> Answer:
+        session = self.session
+        if session.results is None:
+            return {"problem": "There is nothing solved to report."}
+        return self.report([(session.scenario.copy(), session.results)])
+
+    def report(self, pairs: Sequence[tuple[Scenario, Results]]) -> Answer:
+        """Write a report beside the session and hand it over when it is done.
+
+        Parameters
+        ----------
+        pairs : sequence of (Scenario, Results)
+            One, or two to six that are compared; nobody changes them meanwhile.
+
+        Returns
+        -------
+        dict or None
+            ``problem`` where one is being written already.
+        """
+        if self.busy:
+            return {"problem": "A report is being written; wait for it."}
+        self.busy = "writing report"
+        self.show()
+        name = "comparison" if len(pairs) > 1 else file_stem(pairs[0][0].name)
+        self.session.apart(
+            lambda: _made_report(pairs), lambda made: self._reported(f"{name}.html", made)
+        )
+        return None
+
+    def _reported(self, name: str, made: object) -> None:
+        self.busy = ""
+        if isinstance(made, bytes):
+            self.said = f"The report is {name}, {len(made) / 1e6:.1f} MB, among your downloads."
+            self.session.strip.hand_over(download(name, made))
+        else:
+            self.session.say(str(made))
+        self.show()
+
     def _left(self, message: Message) -> Answer:
         session = self.session
         if message["left"] != "take":
@@ -166,38 +214,22 @@ class Header:
         return {}
 
 
-def clock(moment: datetime, now: datetime | None = None) -> str:
-    """Write a time as this computer's clock shows it, with the day where it is another.
+def _made_report(pairs: Sequence[tuple[Scenario, Results]]) -> bytes | str:
+    """Make a report and give it; or the sentence why there is none."""
+    from app.report import ReportError, make_report
 
-    Parameters
-    ----------
-    moment : datetime.datetime
-        With its time zone.
-    now : datetime.datetime, optional
-        The present time, with its time zone.
-
-    Returns
-    -------
-    str
-        For example ``"14:32"`` or ``"3 Mar 2026, 14:32"``.
-    """
-    local = moment.astimezone()
-    today = (now or datetime.now().astimezone()).astimezone()
-    time = f"{local:%H:%M}"
-    return time if local.date() == today.date() else f"{local.day} {local:%b %Y}, {time}"
+    with tempfile.TemporaryDirectory(prefix="halfspan-") as folder:
+        try:
+            path = make_report(pairs, output=Path(folder) / "report.html")
+        except (ReportError, InputError) as error:
+            return f"The report could not be written: {error}."
+        except Exception:
+            LOG.exception("a report failed")
+            return "Something inside went wrong with the report. The log file has the details."
+        return path.read_bytes()
 
 
-def file_stem(name: str) -> str:
-    """Make a name for a file out of a name: letters, digits and dashes."""
-    return re.sub(r"[^A-Za-z0-9]+", "-", name).strip("-")[:60].strip("-") or "scenario"
-
-
-def download(name: str, data: bytes) -> dict[str, object]:
-    """Make the answer that hands the user a file."""
-    return {"download": {"name": name, "data": base64.b64encode(data).decode()}}
-
-
-def packed_copy(scenario: Any) -> tuple[str, bytes]:  # noqa: ANN401
+def packed_copy(scenario: Scenario) -> tuple[str, bytes]:
     """Give a scenario as a file to keep: TOML, in a zip with its tables where it has some.
 
     Parameters

@@ -7,8 +7,10 @@ from __future__ import annotations
 
 import logging
 import socket
+import threading
 import webbrowser
 from collections.abc import Callable
+from functools import partial
 from pathlib import Path
 from typing import TYPE_CHECKING, cast
 
@@ -16,6 +18,8 @@ import panel as pn
 from bokeh.document import Document
 from bokeh.io import curdoc
 from bokeh.server.server import Server
+from tornado.httputil import HTTPServerRequest
+from tornado.web import RequestHandler
 
 from app.autosave import Autosave
 from app.figures.look import static_text, theme
@@ -33,6 +37,9 @@ ADDRESS = "127.0.0.1"
 TITLE = "Halfspan"
 LARGEST_MESSAGE = 22_000_000
 """Largest message from the browser [bytes]: an upload of 15 MB, in letters."""
+
+REFRESH_MS = 3000
+"""Between two looks at what other windows changed [ms]."""
 
 
 def page(workspace: Workspace, document: Document) -> pn.viewable.Viewable:
@@ -55,10 +62,22 @@ def page(workspace: Workspace, document: Document) -> pn.viewable.Viewable:
         start.scenario,
         workspace,
         later=document.add_timeout_callback,
+        apart=partial(_apart, document),
         notice=start.trouble,
     )
+    document.add_periodic_callback(session.refresh, REFRESH_MS)
     document.on_session_destroyed(lambda _context: session.end())
     return session.layout()
+
+
+def _apart(document: Document, work: Callable[[], object], done: Callable[[object], None]) -> None:
+    """Do what takes long in a thread of its own, then tell the session in its own time."""
+
+    def run() -> None:
+        found = work()
+        document.add_next_tick_callback(lambda: done(found))
+
+    threading.Thread(target=run, name="halfspan-apart", daemon=True).start()
 
 
 def _named_state(document: Document) -> str:
@@ -195,8 +214,30 @@ def make_server(workspace: Workspace, *, port: int) -> Server:
         title=TITLE,
         verbose=False,
     )
+    _answer_only_to(server, f"{ADDRESS}:{port}")
     server.start()
     return cast(Server, server)
+
+
+class _Elsewhere(RequestHandler):
+    """The answer to a request that names another host: a foreign page may be behind it."""
+
+    def prepare(self) -> None:
+        self.set_status(403)
+        self.finish(f"Halfspan answers at http://{self.settings['halfspan_host']}/ only.")
+
+
+def _answer_only_to(server: Server, host: str) -> None:
+    application = server._tornado
+    find = application.find_handler
+    application.settings["halfspan_host"] = host
+
+    def find_own(request: HTTPServerRequest, **more: object) -> object:
+        if request.headers.get("Host", "") != host:
+            return application.get_handler_delegate(request, _Elsewhere)
+        return find(request, **more)
+
+    setattr(application, "find_handler", find_own)  # noqa: B010 - its one door
 
 
 def _free_port() -> int:

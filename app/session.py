@@ -7,10 +7,8 @@ kept. Nothing else on the page calls the analysis.
 
 from __future__ import annotations
 
-import logging
-from collections.abc import Callable, Mapping
-from contextlib import AbstractContextManager
-from types import TracebackType
+from collections.abc import Callable, Iterator, Mapping, Sequence
+from contextlib import AbstractContextManager, contextmanager
 from typing import Any
 
 import panel as pn
@@ -21,10 +19,13 @@ from app.figures.look import static_text
 from app.figures.station import Station
 from app.header import Header
 from app.history import History, State, apply, state_of
+from app.journal import Journal, JournalError
 from app.keeper import Keeper, Later
+from app.page_guard import PageGuard
 from app.page_state import field_groups, margin_tile, refusal, station_words
 from app.scenario import Scenario, field_list
 from app.sheets.balance import BalanceSheet
+from app.sheets.journal import JournalSheet
 from app.sheets.landing import LandingSheet
 from app.sheets.section import SectionSheet
 from app.sheets.sheet import Sheet
@@ -32,8 +33,6 @@ from app.sheets.speed import SpeedSheet
 from app.sheets.wing import WingSheet
 from app.workspace import Workspace
 from solver.errors import InputError
-
-LOG = logging.getLogger(__name__)
 
 SHEETS: tuple[type[Sheet], ...] = (SectionSheet, WingSheet, BalanceSheet, SpeedSheet, LandingSheet)
 SHEETS_BY_NAME = {kind.name: kind for kind in SHEETS}
@@ -44,6 +43,13 @@ WRONG = (
 )
 
 NOTHING = "Something inside went wrong and nothing could be solved. The log file has the details."
+
+
+Apart = Callable[[Callable[[], object], Callable[[Any], None]], object]
+
+
+def _at_once(work: Callable[[], object], done: Callable[[Any], None]) -> None:
+    done(work())
 
 
 class Session:
@@ -57,6 +63,8 @@ class Session:
         What it shares with the others.
     later : callable, optional
         Calls something after so many milliseconds, in this session.
+    apart : callable
+        Does what takes long beside the session, then hands it what came of it.
     notice : str
         What to say at the start.
     """
@@ -67,20 +75,25 @@ class Session:
         workspace: Workspace,
         *,
         later: Later | None = None,
+        apart: Apart = _at_once,
         notice: str = "",
     ) -> None:
         self.scenario, self.workspace = scenario, workspace
-        self.analysis = workspace.analysis
+        self.analysis, self.apart = workspace.analysis, apart
         self.fields = {field.name: field for field in field_list()}
         self.refused: dict[str, tuple[object, str]] = {}
         self.notice = ""
         self.chosen = ""
         self.results: Results | None = None
         self.history = History(state_of(scenario))
-        self.sheets = {kind.name: kind(Station(self._say_station), self.guard) for kind in SHEETS}
+        self.sheets: dict[str, Sheet] = {
+            kind.name: kind(Station(self._say_station), self.guard) for kind in SHEETS
+        }
+        self.kept = JournalSheet(Station(self._say_station), self.guard, self)
+        self.sheets[self.kept.name] = self.kept
         self.open = self.sheets[FIRST]
         self.strip = Strip(self._strip_message, css_classes=["halfspan-strip"], **_WIDE)
-        self.keeper = Keeper(workspace, scenario, later=later, told=self._kept)
+        self.keeper = Keeper(workspace, scenario, later=later, told=self._told)
         self.header = Header(self)
         self.tabs = Tabs(
             self._tabs_message, names=list(self.sheets), active=self.open.name, **_WIDE
@@ -110,7 +123,7 @@ class Session:
 
     def guard(self) -> AbstractContextManager[None]:
         """Make what every callback runs under."""
-        return _Guard(self)
+        return PageGuard(self)
 
     def end(self) -> None:
         """Take note that the tab was closed."""
@@ -219,6 +232,33 @@ class Session:
         self.history.break_step()
         self._changed()
 
+    @property
+    def journal(self) -> Journal:
+        """The journal of all sessions."""
+        return self.workspace.journal
+
+    def restore(self, scenario: Scenario, said: str) -> None:
+        """Take over a scenario from the journal, and say so."""
+        with _said_of(scenario):
+            self.replace(scenario)
+        self.keeper.saved_to_journal()
+        self.header.say(said)
+
+    def solve_kept(self, scenario: Scenario, want: frozenset[str]) -> Results:
+        """Solve a scenario from the journal."""
+        with _said_of(scenario):
+            return self.solve(scenario, want)
+
+    def report(self, pairs: Sequence[tuple[Scenario, Results]]) -> dict[str, object] | None:
+        """Write a report that compares."""
+        return self.header.report(pairs)
+
+    def refresh(self) -> None:
+        """Look whether another window changed what is on the open sheet."""
+        if self.open is self.kept:
+            with self.guard():
+                self.kept.refresh()
+
     def _change(self, make: Callable[[], object], solved: Callable[[], object]) -> None:
         before, results = state_of(self.scenario), self.results
         try:
@@ -238,7 +278,7 @@ class Session:
 
     def _changed(self) -> None:
         self.keeper.touch()
-        self.header.show()
+        self.header.say("")
 
     def _refuse(self, error: InputError, values: Mapping[str, object]) -> None:
         name = error.name if error.name in self.fields else next(iter(values))
@@ -306,7 +346,7 @@ class Session:
         self.say(WRONG if self.results is not None else NOTHING)
         self._show_fields()
 
-    def _kept(self, digest: str, trouble: str) -> None:
+    def _told(self, digest: str, trouble: str) -> None:
         self.strip.digest = digest
         if trouble:
             self.say(trouble)
@@ -328,23 +368,13 @@ class Session:
         )
 
 
-class _Guard(AbstractContextManager[None]):
-    """Turn an error in a callback into a sentence on the page."""
-
-    def __init__(self, session: Session) -> None:
-        self.session = session
-
-    def __exit__(
-        self,
-        kind: type[BaseException] | None,
-        error: BaseException | None,
-        trace: TracebackType | None,
-    ) -> bool:
-        if not isinstance(error, Exception):
-            return False
-        LOG.error("a callback failed", exc_info=error)
-        self.session.fail()
-        return True
+@contextmanager
+def _said_of(scenario: Scenario) -> Iterator[None]:
+    """Say what the analysis refuses as a trouble of the journal."""
+    try:
+        yield
+    except InputError as error:
+        raise JournalError(f"“{scenario.name}” cannot be solved: {error}.") from error
 
 
 _WIDE: dict[str, Any] = {"sizing_mode": "stretch_width"}

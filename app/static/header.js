@@ -133,7 +133,6 @@ function makeHeader(model) {
     tools.save.hidden = head.file === ""
     tools.save.disabled = head.saved
     nameTool(tools.save, head.saved ? `${head.file} holds what is shown` : `Save to ${head.file}`)
-    tools.report.hidden = !head.report
     tools.report.disabled = head.busy !== ""
     mark.textContent = head.busy || (head.file !== "" && !head.saved ? "not saved" : "")
     done.textContent = head.said
@@ -163,7 +162,7 @@ function makeHeader(model) {
   window.addEventListener("halfspan-solving", (event) => {
     solving.textContent = {ready: "", solving: "solving", lost: "no answer yet"}[event.detail]
   })
-  window.addEventListener("halfspan-download", (event) => handOver(event.detail))
+  model.on("msg:custom", (message) => { if (message && message.download) handOver(message.download) })
   model.document?.on_event("connection_lost", away)
   model.on("header", show)
   model.on("digest", address)

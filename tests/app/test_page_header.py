@@ -10,7 +10,8 @@ from pathlib import Path
 
 import pytest
 
-from app.header import CHANGED_ELSEWHERE, clock, packed_copy
+from app.header import CHANGED_ELSEWHERE, packed_copy
+from app.page_words import clock
 from app.scenario import Scenario
 from app.scenario_file import read_scenario
 from app.scenario_save import write_scenario
