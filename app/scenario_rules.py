@@ -206,7 +206,7 @@ _ODDITIES: tuple[tuple[str, Callable[[Values], bool], str], ...] = (
     (
         "tip_chord_mm",
         lambda v: v["tip_chord_mm"] > v["root_chord_mm"],
-        "The tip chord is larger than the root chord: is that meant?.",
+        "The tip chord is larger than the root chord.",
     ),
     (
         "washout_deg",

@@ -237,6 +237,11 @@ class Session:
         """The journal of all sessions."""
         return self.workspace.journal
 
+    @property
+    def journal_messages(self) -> list[str]:
+        """What was said about the files of the journal."""
+        return self.workspace.journal_messages
+
     def restore(self, scenario: Scenario, said: str) -> None:
         """Take over a scenario from the journal, and say so."""
         with _said_of(scenario):

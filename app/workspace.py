@@ -72,6 +72,7 @@ class Workspace:
     ) -> None:
         self.scenario, self.analysis = scenario, analysis
         self.journal, self.autosave, self.file = journal, autosave, file
+        self.journal_messages: list[str] = []
         self.saved: State = state_of(scenario)
         self.file_text = scenario.source_text
         self.left: Unsaved | None = autosave.recover()

@@ -177,4 +177,5 @@ class ElevatorOverSpeed(Plot):
                 )
             )
         self.labels.feed(rows)
-        self.speeds.feed(results, top=0.94 * balance.elevator_travel_deg)
+        # Under the words at the stop, wherever the speeds lie.
+        self.speeds.feed(results, top=0.72 * balance.elevator_travel_deg)

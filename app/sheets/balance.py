@@ -73,12 +73,13 @@ class BalanceSheet(Sheet):
 
 
 def _shares(balance: BalanceResult) -> list[dict[str, object]]:
-    body = words.number(balance.body_share_percent, "%", sign=True)
-    propeller = words.number(balance.propeller_share_percent, "%", sign=True)
+    # A positive share is taken from the neutral point.
+    body = words.number(-balance.body_share_percent, "%", sign=True)
+    propeller = words.number(-balance.propeller_share_percent, "%", sign=True)
     rows = [
         ("Neutral point", words.number(balance.neutral_point_percent, "%")),
-        ("of which the body", body if balance.body_known else NOT_GIVEN),
-        ("of which the propeller", propeller if balance.propeller_known else NOT_GIVEN),
+        ("what the body takes", body if balance.body_known else NOT_GIVEN),
+        ("what the propeller takes", propeller if balance.propeller_known else NOT_GIVEN),
         ("Balance point", words.number(balance.balance_percent, "%")),
         ("Static margin", words.number(balance.static_margin_percent, "%")),
     ]

@@ -44,6 +44,10 @@ class Desk(Protocol):
     def journal(self) -> Journal:
         """The journal of all sessions."""
 
+    @property
+    def journal_messages(self) -> list[str]:
+        """What was said about its files; a damaged one is set aside only once."""
+
     def solve_kept(self, scenario: Scenario, want: frozenset[str]) -> Results:
         """Solve a scenario; a `JournalError` says why it cannot be."""
 
@@ -73,7 +77,6 @@ class JournalSheet(Sheet):
         super().__init__(station, guard)
         self.desk = desk
         self.words = ""
-        self.messages: list[str] = []
         self.compared: list[tuple[Scenario, Results]] = []
         self.deleted: tuple[str, str] | None = None
         self.listed: dict[str, Snapshot] = {}
@@ -118,7 +121,8 @@ class JournalSheet(Sheet):
             self._show((), 0, str(error))
             return
         # A damaged file is set aside once; what was said about it stays.
-        self.messages += [one for one in listing.messages if one not in self.messages]
+        said = self.desk.journal_messages
+        said += [one for one in listing.messages if one not in said]
         self.listed = {one.id: one for one in listing.snapshots}
         self._show(search(listing.snapshots, self.words), len(listing.snapshots), "")
 
@@ -131,7 +135,7 @@ class JournalSheet(Sheet):
             "found": len(found),
             "words": self.words,
             "snapshots": [_row(one) for one in found[:MOST_SHOWN]],
-            "messages": [*([trouble] if trouble else []), *self.messages[-5:]],
+            "messages": [*([trouble] if trouble else []), *self.desk.journal_messages[-5:]],
             "deleted": {"id": self.deleted[0], "name": self.deleted[1]} if self.deleted else None,
         }
         if state != self.list.state:
@@ -198,7 +202,7 @@ class JournalSheet(Sheet):
         except binascii.Error as error:
             raise JournalError("The file did not arrive whole; try again.") from error
         came = import_into(self.desk.journal, data, file=str(given["name"])[:200])
-        self.messages += came.messages
+        self.desk.journal_messages.extend(came.messages)
         return {"said": _came(came)}
 
     def _compare(self, ids: object) -> Answer:

@@ -6,7 +6,7 @@ from collections.abc import Sequence
 
 import panel as pn
 
-from app.analysis.results import LandingResult, Results
+from app.analysis.results import LandingResult, Results, Verdict
 from app.figures import words
 from app.figures.landing_plots import SpeedsOnOneAxis
 from app.figures.span_plots import LocalLift, ReynoldsAlongSpan, RoomAlongSpan
@@ -24,6 +24,8 @@ from app.sheets.sheet import (
     title,
     words_card,
 )
+
+RISK_WORDS = {Verdict.PASS: "low", Verdict.WATCH: "watch", Verdict.FAIL: "high"}
 
 
 class LandingSheet(Sheet):
@@ -75,7 +77,7 @@ class LandingSheet(Sheet):
                         risk.place,
                         words.number(risk.y_m, "m"),
                         words.reynolds(risk.reynolds),
-                        {"verdict": str(risk.level)},
+                        {"verdict": str(risk.level), "said": RISK_WORDS[risk.level]},
                         risk.reason,
                     )
                     for risk in landing.risks

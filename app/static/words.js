@@ -14,7 +14,7 @@ const MAKE = {
 
 function cell(value) {
   if (value !== null && typeof value === "object") {
-    return node("td", {class: `verdict ${value.verdict}`}, icon(value.verdict), ` ${value.verdict}`)
+    return node("td", {class: `verdict ${value.verdict}`}, icon(value.verdict), ` ${value.said ?? value.verdict}`)
   }
   return node("td", {}, value)
 }

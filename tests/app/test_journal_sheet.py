@@ -234,7 +234,7 @@ def test_two_are_laid_side_by_side(session):
     for plot in session.kept.overlays[1:]:
         fed = [bool(line.source.data["x"]) for line in plot.lines]
         assert fed == [True] * 3 + [False] * 3
-        assert plot.labels.source.data["text"] == ["A", "B", "C"]
+        assert plot.labels.source.data["text"] == ["A", "B", "C", "", "", ""]
     tips = [max(one.data["x"][0]) for one in session.kept.overlays[0].sources[:3]]
     assert tips == [1.1, 1.1, 1.2]
     # Fewer afterwards: what was drawn before goes.

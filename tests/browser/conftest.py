@@ -88,24 +88,44 @@ def chromium() -> str:
     )
 
 
+class Program:
+    """The notebook as a program of its own, which can be killed and started again.
+
+    Parameters
+    ----------
+    arguments : str
+        Folder and port, or nothing.
+    """
+
+    def __init__(self, *arguments: str) -> None:
+        self.process = subprocess.Popen(
+            [sys.executable, "-m", "tests.browser.served_page", *arguments],
+            cwd=ROOT,
+            stdout=subprocess.PIPE,
+            text=True,
+            env={**os.environ, "OPENBLAS_NUM_THREADS": "1"},
+        )
+        self.address = self.process.stdout.readline().strip()
+        assert self.address.startswith("http://127.0.0.1:"), "the notebook did not start; see above"
+
+    def end(self, *, kill: bool = False) -> None:
+        """End it, or kill it without a word of warning."""
+        if kill:
+            self.process.kill()
+        else:
+            self.process.terminate()
+        self.process.wait(10)
+        self.process.stdout.close()
+
+
 @pytest.fixture(scope="session")
 def address() -> Iterator[str]:
     """Address of a running notebook."""
-    program = subprocess.Popen(
-        [sys.executable, "-m", "tests.browser.served_page"],
-        cwd=ROOT,
-        stdout=subprocess.PIPE,
-        text=True,
-        env={**os.environ, "OPENBLAS_NUM_THREADS": "1"},
-    )
+    program = Program()
     try:
-        line = program.stdout.readline().strip()
-        assert line.startswith("http://127.0.0.1:"), "the notebook did not start; see above"
-        yield line
+        yield program.address
     finally:
-        program.terminate()
-        program.wait(10)
-        program.stdout.close()
+        program.end()
 
 
 @pytest.fixture(scope="session")

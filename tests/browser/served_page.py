@@ -16,6 +16,7 @@ from app.analysis.stages import Analysis
 from app.inputs import Inputs
 from app.notebook import serve
 from app.scenario_file import read_scenario
+from app.scenario_save import write_scenario
 
 DEMO = Path(__file__).resolve().parents[2] / "scenarios" / "heronsgill-24.toml"
 NAME = '<img src=x onerror="window.harmed=1"> <b>Rook</b> & co'
@@ -37,22 +38,31 @@ class MisbehavingAnalysis(Analysis):
 
 
 def main() -> None:
-    """Serve until the process is ended."""
-    scenario = read_scenario(DEMO)
-    scenario.name, scenario.note = NAME, NOTE
+    """Serve until the process is ended: a folder for all it writes, and a port, may be given."""
+    with tempfile.TemporaryDirectory(prefix="halfspan-test-") as made:
+        folder = Path(sys.argv[1]) if len(sys.argv) > 1 else Path(made)
+        port = int(sys.argv[2]) if len(sys.argv) > 2 else None
+        scenario = read_scenario(DEMO)
+        scenario.name, scenario.note = NAME, NOTE
+        file = folder / "rook.toml"
+        if file.exists():
+            scenario = read_scenario(file)
+        else:
+            write_scenario(scenario, file)
 
-    def ready(address: str) -> None:
-        sys.stdout.write(f"{address}\n")
-        sys.stdout.flush()
+        def ready(address: str) -> None:
+            sys.stdout.write(f"{address}\n")
+            sys.stdout.flush()
 
-    with tempfile.TemporaryDirectory(prefix="halfspan-test-") as folder:
         serve(
             scenario,
+            port=port,
             open_browser=False,
             ready=ready,
             analysis=MisbehavingAnalysis(),
-            journal=Path(folder) / "journal",
-            states=Path(folder) / "states",
+            journal=folder / "journal",
+            states=folder / "states",
+            file=file,
         )
 
 

@@ -346,3 +346,14 @@ def test_a_foreign_page_cannot_reach_the_program(address):
         answer = connection.getresponse()
         connection.close()
         assert answer.status == status
+
+
+def test_a_request_that_names_another_host_is_refused(address):
+    place = urlsplit(address)
+    for path in ("/", "/ws", "/static/js/bokeh.min.js"):
+        connection = http.client.HTTPConnection(place.hostname, place.port, timeout=10)
+        connection.request("GET", path, headers={"Host": f"elsewhere.example:{place.port}"})
+        answer = connection.getresponse()
+        assert answer.status == 403
+        assert b"127.0.0.1" in answer.read()
+        connection.close()
