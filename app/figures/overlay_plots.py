@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from abc import ABC, abstractmethod
 from collections.abc import Callable, Sequence
 from typing import Any
 
@@ -34,12 +35,13 @@ WIDTHS = (2.5, 1.5, 0.8)
 Useful = Callable[[FloatArray], FloatArray]
 
 
-class Overlay:
+class Overlay(ABC):
     """One figure over which up to six wings are laid."""
 
     model: figure
     shape = "one"
 
+    @abstractmethod
     def update(self, results: Sequence[Results]) -> None:
         """Feed the figure.
 
@@ -48,7 +50,6 @@ class Overlay:
         results : sequence of Results
             One a letter; what the figure shows must have been asked for.
         """
-        raise NotImplementedError
 
 
 class OverlayPlanforms(Overlay):
@@ -85,6 +86,7 @@ class OverlayPlanforms(Overlay):
         """Feed the figure."""
         plans = [one.planform for one in results]
         half = max(half_span(plan) for plan in plans)
+        least = min(half_span(plan) for plan in plans)
         fit(self.model.x_range, [-half, half], room=(0.03, 0.03))  # type: ignore[arg-type]
         far = max(float(np.max(plan.tail_x)) for plan in plans)
         near = min(float(np.min(plan.wing_x)) for plan in plans)
@@ -101,9 +103,9 @@ class OverlayPlanforms(Overlay):
             }
             tip = int(np.argmax(plan.wing_y))
             # On the leading edge, each at a place of its own.
-            share = 0.3 + 0.12 * at
-            place = share * float(plan.wing_y[tip]), share * float(plan.wing_x[tip])
-            rows.append((*place, *_named(at), "center"))
+            place = (0.25 + 0.12 * at) * least
+            height = place / float(plan.wing_y[tip]) * float(plan.wing_x[tip])
+            rows.append((place, height, *_named(at), "center"))
         self.labels.feed(_all_six(rows, (-9.0 * half, far)))
 
 

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from abc import ABC, abstractmethod
 from collections.abc import Callable, Sequence
 from contextlib import AbstractContextManager, nullcontext
 from dataclasses import dataclass
@@ -57,7 +58,7 @@ BRIEF = (MISSION, FIELD, LIMITS)
 """The brief: in the column whatever sheet is open."""
 
 
-class Sheet:
+class Sheet(ABC):
     """One sheet: built when it is first opened, then fed while it is open.
 
     Parameters
@@ -113,9 +114,9 @@ class Sheet:
         Returns
         -------
         sequence of Viewable
-            The cards in their order on the sheet.
+            The cards in their order on the sheet; none where a sheet lays itself out.
         """
-        raise NotImplementedError
+        return ()
 
     def feed(self, results: Results) -> None:
         """Show results in figures and words.
@@ -128,6 +129,7 @@ class Sheet:
         for plot in self.plots:
             plot.update(results)
 
+    @abstractmethod
     def numbers(self, results: Results) -> list[dict[str, object]]:
         """Give the numbers behind the plots.
 
@@ -141,7 +143,6 @@ class Sheet:
         list of dict
             Tables for a card of words.
         """
-        raise NotImplementedError
 
     def _fold(self, message: Message) -> None:
         with self.guard():
