@@ -11,6 +11,7 @@ from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
 from app.autosave import AutosaveError
+from app.history import state_of
 from app.journal import JournalError
 from app.page_words import clock, download, file_stem
 from app.scenario_error import ScenarioError
@@ -153,6 +154,7 @@ class Header:
         except ScenarioError as error:
             return {"problem": f"{error}."}
         self._overwrite = False
+        session.history.amend(state_of(session.scenario))  # its tables may lie elsewhere now
         session.keeper.saved_to_file()
         self.said = f"Saved to {file.name}."
         return {}

@@ -166,6 +166,16 @@ class History:
         """End the present step: the next change is one by itself."""
         self._moving = frozenset()
 
+    def amend(self, state: State) -> None:
+        """Take the present state for another that means the same, which is no step.
+
+        Parameters
+        ----------
+        state : State
+            For example with other paths of its tables, after they were saved.
+        """
+        self._states[self._place] = state
+
     def undo(self) -> State | None:
         """Go one step back.
 

@@ -200,6 +200,8 @@ def make_server(workspace: Workspace, *, port: int) -> Server:
         document = curdoc()
         document.theme = theme()
         document.config.notify_connection_status = False
+        # A program started anew knows nothing of this page: a reload is the way back.
+        document.config.reconnect_session = False
         return page(workspace, document)
 
     port = port or _free_port()

@@ -228,6 +228,9 @@ class Session:
         state = state_of(scenario)
         self.history.break_step()
         self.become(state)
+        if self.workspace.file is None:
+            # The comments of an opened file stay with it.
+            self.scenario.source_text = scenario.source_text
         self.history.record(state_of(self.scenario))
         self.history.break_step()
         self._changed()

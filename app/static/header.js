@@ -14,7 +14,8 @@ class Ask {
     this.element.setAttribute("role", role)
     this.element.replaceChildren(...children)
     this.element.hidden = false
-    this.element.parentElement?.classList.add("asking")
+    // An offer waits beside what is said; all else stands in its place.
+    this.element.parentElement?.classList.toggle("asking", kind !== "left")
   }
 
   close() {
@@ -148,7 +149,7 @@ function makeHeader(model) {
       .then(() => location.reload())
       .catch(() => { said.textContent = "It does not answer yet." })
     ask.open("lost", "alert",
-      node("p", {}, "The connection to the program is lost. Your work up to the last change is kept: start Halfspan again and it offers it, or reload this page once it runs."),
+      node("p", {}, "The connection to the program is lost. Changes made now are not kept; those before are: start Halfspan again and it offers them, or reload this page once it runs."),
       node("button", {type: "button", class: "main", onclick: again}, "Reload"), said)
   }
 

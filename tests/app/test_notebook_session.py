@@ -8,6 +8,7 @@ import pytest
 from bokeh.document import Document
 
 from app import notebook
+from app.journal_exchange import LARGEST_UPLOAD
 from app.page_state import margin_tile
 from app.scenario import Scenario
 from app.session import NOTHING, WRONG, Session
@@ -245,6 +246,9 @@ def test_the_server_listens_on_this_computer_and_for_its_own_page_only(workspace
     try:
         assert server.address == "127.0.0.1"
         assert server._tornado._websocket_origins == {f"127.0.0.1:{server.port}"}
+        assert server._tornado.settings["websocket_max_message_size"] == notebook.LARGEST_MESSAGE
+        # An upload of the largest size comes as letters, four for three bytes.
+        assert notebook.LARGEST_MESSAGE > LARGEST_UPLOAD * 4 / 3
     finally:
         server.stop()
 

@@ -170,6 +170,25 @@ def test_save_does_not_overwrite_what_was_changed_elsewhere_without_asking(sessi
     assert read_scenario(opened.file).brief.mass_kg == 4.6
 
 
+def test_saving_tables_that_came_from_elsewhere_is_no_step(session):
+    session.replace(read_scenario(example_path()))  # its tables lie in another folder
+    label = head(session)["undo"]
+    assert ask(session, save=True) == {}
+    saved = read_scenario(session.workspace.file)
+    assert saved.freeze() == read_scenario(example_path()).freeze()
+    assert head(session)["undo"] == label
+    send(session, span_m=2.3)
+    assert head(session)["undo"] == "Undo span 2.40 to 2.30 m"
+    ask(session, step=-1)
+    assert head(session)["saved"]
+
+
+def test_a_scenario_brought_back_has_its_comments_where_no_file_is_open(tmp_path):
+    session = begun(made_workspace(plain(), tmp_path))
+    session.replace(read_scenario(example_path()))
+    assert session.scenario.source_text == example_path().read_text(encoding="utf-8")
+
+
 def test_where_no_file_was_opened_there_is_nothing_to_save_to(tmp_path):
     session = begun(made_workspace(plain(), tmp_path))
     assert head(session)["file"] == ""

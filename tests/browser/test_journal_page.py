@@ -13,7 +13,16 @@ from playwright.sync_api import Browser, Locator, Page, expect
 from app.journal_exchange import LARGEST_UPLOAD
 from app.scenario_file import read_scenario
 from tests.browser.conftest import IDLE, Program, Watch, open_page
-from tests.browser.test_page import SETTLED, UNPAINTED, entry, give, open_sheet, slider, tile
+from tests.browser.test_page import (
+    LINE,
+    SETTLED,
+    UNPAINTED,
+    entry,
+    give,
+    open_sheet,
+    slider,
+    wait_for_change,
+)
 
 pytestmark = [pytest.mark.browser, pytest.mark.slow]
 
@@ -109,23 +118,25 @@ def kept_address(page: Page) -> str:
 
 def test_undo_and_redo_by_button_and_by_keyboard(page):
     open_sheet(page, "Wing")
-    give(page, "span_m", "2.3")
+    sweep = entry(page, "sweep_deg")  # no other test moves it: close moves would be one step
+    give(page, "sweep_deg", "5")
     expect(button(page, "Nothing to do again")).to_be_disabled()
-    button(page, "Undo span 2.40 to 2.30 m").click()
-    expect(entry(page, "span_m")).to_have_value("2.4")
-    expect(tile(page, "Span")).to_contain_text("2.40")
+    before = page.evaluate(LINE, "Wing: planform")
+    button(page, re.compile(r"^Undo sweep 0\S* to 5\S* deg$")).click()
+    expect(sweep).to_have_value("0")
+    wait_for_change(page, "Wing: planform", before)
     slider(page, "Root chord").focus()
     page.keyboard.press("Control+Shift+z")
-    expect(entry(page, "span_m")).to_have_value("2.3")
+    expect(sweep).to_have_value("5")
     # Letters typed into a field are the browser's to undo.
     entry(page, "mass_kg").focus()
     page.keyboard.press("Control+z")
     page.wait_for_function(SETTLED)
-    expect(entry(page, "span_m")).to_have_value("2.3")
+    expect(sweep).to_have_value("5")
     slider(page, "Root chord").focus()
     page.keyboard.press("Control+z")
-    expect(entry(page, "span_m")).to_have_value("2.4")
-    expect(button(page, "Redo span 2.40 to 2.30 m")).to_be_enabled()
+    expect(sweep).to_have_value("0")
+    expect(button(page, re.compile(r"^Redo sweep"))).to_be_enabled()
 
 
 def test_snapshots_are_compared_and_one_is_brought_back(page):
