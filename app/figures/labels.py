@@ -35,6 +35,7 @@ class Labels:
 
     def __init__(self, plot: figure, *, baseline: str = "middle", chips: bool = False) -> None:
         self.source = ColumnDataSource({name: [] for name in _LABEL_COLUMNS})
+        self.chips, self.most = chips, 0
         self.renderer = plot.text(
             "x",
             "y",
@@ -68,6 +69,11 @@ class Labels:
             for row in labels
             if math.isfinite(row[0]) and math.isfinite(row[1])
         ]
+        if self.chips:
+            # Bokeh 3.9 fails in the browser when words on paper become fewer: what is
+            # gone stays as a row without words or place.
+            self.most = max(self.most, len(kept))
+            kept += [(math.nan, math.nan, "", "", "left")] * (self.most - len(kept))
         self.source.data = {
             name: [row[at] for row in kept] for at, name in enumerate(_LABEL_COLUMNS)
         }

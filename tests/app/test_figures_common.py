@@ -13,7 +13,8 @@ from hypothesis import strategies as st
 
 from app.analysis.results import Trust
 from app.figures import look, words
-from app.figures.plot import DASHES, NAMES, split_by_trust
+from app.figures.labels import Labels
+from app.figures.plot import DASHES, NAMES, new_figure, split_by_trust
 from app.figures.ranges import bounds, fit
 from app.figures.station import Station, chord_ends, station_columns
 from tests.app.sample_results import make_results
@@ -212,3 +213,12 @@ def test_no_script_sets_html_or_asks_another_host(name):
 @pytest.mark.parametrize("name", sorted(path.name for path in look.STATIC.glob("*.css")))
 def test_no_style_sheet_loads_anything(name):
     assert not re.search(r"@import|url\(", look.static_text(name))
+
+
+def test_words_on_paper_never_become_fewer_rows():
+    labels = Labels(new_figure("words", "Words", x_label="x [-]", y_label="y [-]"), chips=True)
+    labels.feed([(0.0, 0.0, "one", "#000000"), (1.0, 1.0, "two", "#000000")])
+    labels.feed([(0.5, 0.5, "alone", "#000000")])
+    data = labels.source.data
+    assert list(data["text"]) == ["alone", ""]
+    assert math.isnan(data["x"][1])
