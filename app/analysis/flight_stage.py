@@ -263,7 +263,7 @@ def lift_curve_result(aircraft: Aircraft, flight: Trimmed, *, onset: StallOnset)
     trust = np.concatenate([np.atleast_1d(flight_trust(state)) for state in states])
     trust = np.where(started & (trust < Trust.INDICATIVE), Trust.INDICATIVE, trust)
     return LiftCurveResult(
-        angle_deg=np.degrees(angles),
+        angle_deg=np.degrees(np.concatenate([first, branch.angle])),
         lift_coefficient=lift,
         trust=trust.astype(np.uint8),
         stalled_from=np.concatenate([np.atleast_1d(low) for low, _ in ranges]),

@@ -143,20 +143,18 @@ def stalling_range(state: Loading, *, surface: int = 0) -> tuple[FloatArray, Flo
 
 @dataclass(frozen=True, eq=False)
 class Branch:
-    """Loadings followed from low angle upwards; arrays (k,).
+    """Loadings followed from low angle upwards.
 
     Fields
     ------
     states : tuple of Loading
-        One for each angle.
-    angle : ndarray
-        [rad]
-    converged : ndarray of bool
+        One for each angle, all of them converged.
+    angle : ndarray, shape (k,)
+        [rad]; fewer than were asked for where the branch was lost.
     """
 
     states: tuple[Loading, ...]
     angle: FloatArray
-    converged: NDArray[np.bool_]
 
 
 def follow(
@@ -181,17 +179,16 @@ def follow(
     -----
     Past stall the equations have several solutions. Each angle starts from the
     circulations of the angle below it, so what is found is what a slow pull would
-    meet first. An angle that fails leaves the last good circulations as the start
-    of the next.
+    meet first. The branch ends before the first angle that fails.
     """
     states: list[Loading] = []
     for angle in angles:
         state = solve(flow_at(float(angle)), float(angle), start=start)
-        if bool(state.converged):
-            start = state.circulation
+        if not bool(state.converged):
+            break
+        start = state.circulation
         states.append(state)
     return Branch(
         states=tuple(states),
-        angle=np.asarray(angles, dtype=np.float64),
-        converged=np.array([bool(state.converged) for state in states]),
+        angle=np.asarray(angles[: len(states)], dtype=np.float64),
     )

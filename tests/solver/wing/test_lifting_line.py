@@ -157,7 +157,8 @@ def test_followed_from_below_the_branch_is_the_slow_pull():
 
     angles = np.radians(np.arange(0.0, 19.0))
     branch = follow(flow_at, angles)
-    assert np.all(branch.converged)
+    np.testing.assert_array_equal(branch.angle, angles)
+    assert all(state.converged for state in branch.states)
     first = np.array([state.circulation for state in branch.states])
     # Continuous: no station jumps by more than the flow could in one degree.
     assert np.max(np.abs(np.diff(first, axis=0))) < 0.02
