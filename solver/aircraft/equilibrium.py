@@ -33,8 +33,9 @@ WAKE_TOLERANCE = np.radians(0.05)
 arm of one half-span that moves the wake by 0.1 % of the half-span, and the downwash
 by less than 0.1 % of itself."""
 
-SETTLING = np.radians(0.1)
-"""The wake is laid anew once a step turns the aircraft by less than this [rad]."""
+NEARING, SETTLING = np.radians(1.0), np.radians(0.1)
+"""The wake is laid anew once a step turns the aircraft by less than the first, since the
+next step will be far smaller; after that only once it has all but settled [rad]."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -299,12 +300,12 @@ def solve(
     """
     mean_chord = float(np.mean(problem.aircraft.lattice.chord))
     field = influence(problem.aircraft.lattice, wake_angle=guess.angle) if field is None else field
-    turning = 0.0
+    turning, slow = 0.0, NEARING
     for iteration in range(MOST_ITERATIONS):
         off = np.abs(guess.angle - field.wake_angle) > wake_tolerance
-        if turning < SETTLING and np.any(off):
+        if turning < slow and np.any(off):
             field = influence(problem.aircraft.lattice, wake_angle=guess.angle)
-            off = np.zeros_like(off)
+            off, slow = np.zeros_like(off), SETTLING
         at = problem.at(field, guess)
         target_gap, moment_gap = problem.target.gap(problem, at), problem.moment_gap(at)
         converged = (
