@@ -76,7 +76,8 @@ def body_moment_slope(body: Body) -> float:
     References
     ----------
     .. [1] M. M. Munk, The Aerodynamic Forces on Airship Hulls, NACA Report 184, 1924.
-    .. [2] H. Lamb, Hydrodynamics, 6th ed., 1932, sec. 114, eq. (6)-(9).
+    .. [2] H. Lamb, Hydrodynamics, 6th ed., 1932, sec. 114, eq. (6)-(9) (numbers from
+       memory; checked against the integrals by quadrature).
     """
     if not body.known:
         return 0.0

@@ -16,8 +16,6 @@ THICKNESS_COEFFICIENTS = (0.2969, -0.1260, -0.3516, 0.2843, -0.1015)
 """Of sqrt(x), x, x^2, x^3, x^4 for a thickness of 20 % chord (NACA Report 460, eq. (1))."""
 CLOSED_LAST_COEFFICIENT = -0.1036
 """Replaces the last one where the trailing edge is to close (common practice, no source)."""
-LEADING_EDGE_RADIUS_FACTOR = 1.1019
-"""Radius at the leading edge over thickness squared (NACA Report 460, p. 4): (5 x 0.2969)^2 / 2."""
 
 # NACA Report 537 (1935), table I, and NACA Report 610 (1937): where the curvature of the
 # camber line ends, and its constants, for a design lift coefficient of 0.3 (first digit 2).

@@ -59,7 +59,7 @@ def station_forces(
 
     References
     ----------
-    .. [1] W. F. Phillips, D. O. Snyder, J. Aircraft 37(4), 2000, eq. (3): the
+    .. [1] W. F. Phillips, D. O. Snyder, J. Aircraft 37(4), 2000, eq. (3) (number from memory): the
        Kutta-Joukowski force with the local velocity, free stream plus induced.
     """
     cosine, sine = np.cos(angle_of_attack)[..., None], np.sin(angle_of_attack)[..., None]
@@ -105,7 +105,8 @@ def trefftz_drag(
     References
     ----------
     .. [1] M. M. Munk, The Minimum Induced Drag of Aerofoils, NACA Report 121, 1921.
-    .. [2] J. Katz, A. Plotkin, Low-Speed Aerodynamics, 2nd ed., 2001, eq. (8.146).
+    .. [2] J. Katz, A. Plotkin, Low-Speed Aerodynamics, 2nd ed., 2001, eq. (8.146) (number
+       from memory).
     """
     inner_y, inner_z = _across_stream(lattice.inner, angle_of_attack)
     outer_y, outer_z = _across_stream(lattice.outer, angle_of_attack)

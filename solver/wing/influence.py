@@ -94,7 +94,7 @@ def influence(
 
     Notes
     -----
-    Horseshoe velocity after Phillips and Snyder [1]_, eq. (5), written with
+    Horseshoe velocity after Phillips and Snyder [1]_, eq. (5) from memory, written with
     h^2 = |u x r|^2 so that it loses no digits downstream. A station's own bound
     segment induces nothing on its own control point. Legs that pass another
     surface are given the core of Vatistas [2]_ with n = 2: the velocity 1/h
