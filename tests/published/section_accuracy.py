@@ -18,15 +18,9 @@ from typing import Protocol
 from solver.errors import InputError
 from solver.section.geometry import Outline
 from tests.published.measured_sections import SECTIONS
-from tests.published.section_comparison import (
-    RANGES,
-    Comparison,
-    Figures,
-    FloatArray,
-    Flow,
-    compare,
-    measured,
-)
+from tests.published.section_comparison import Flow, compare, measured
+from tests.published.section_pictures import can_draw, draw
+from tests.published.section_records import RANGES, Comparison, Figures, FloatArray
 
 CAMBERED = ("s1223", "fx63-137")
 """Very cambered: their largest lift is given apart, since it would outweigh the others."""
@@ -217,6 +211,8 @@ def main(arguments: list[str] | None = None, *, solve: Solve | None = None) -> i
     parser.add_argument("--threads", type=int, default=1)
     parser.add_argument("--plot", type=Path, metavar="FOLDER", help="a picture a section")
     given = parser.parse_args(arguments)
+    if given.plot is not None and not can_draw():
+        parser.error("--plot needs matplotlib, which is not installed")
     try:
         flows = run(
             solve,
@@ -228,12 +224,7 @@ def main(arguments: list[str] | None = None, *, solve: Solve | None = None) -> i
         parser.error(str(error))
     sys.stdout.write("\n".join(lines(compare(flows))) + "\n")
     if given.plot is not None:
-        from tests.published.section_pictures import draw
-
-        try:
-            draw(flows, given.plot)
-        except ImportError:
-            parser.error("--plot needs matplotlib, which is not installed")
+        draw(flows, given.plot)
     return 0
 
 

@@ -21,6 +21,15 @@ DRAG_LIMITS = (0.0, 0.08)
 SIDE_INCHES = 3.6
 
 
+def can_draw() -> bool:
+    """Whether matplotlib, which nothing else needs, is installed."""
+    try:
+        import matplotlib  # noqa: F401
+    except ImportError:
+        return False
+    return True
+
+
 def draw(flows: Mapping[str, Flow], folder: Path) -> list[Path]:
     """Write one picture a section: lift over angle, lift over drag, by Reynolds number.
 
@@ -29,7 +38,6 @@ def draw(flows: Mapping[str, Flow], folder: Path) -> list[Path]:
     ImportError
         If matplotlib is not installed.
     """
-    from matplotlib.backends.backend_agg import FigureCanvasAgg
     from matplotlib.figure import Figure
 
     folder.mkdir(parents=True, exist_ok=True)
@@ -47,7 +55,7 @@ def draw(flows: Mapping[str, Flow], folder: Path) -> list[Path]:
         axes[1, 0].set_ylabel("cl")
         axes[1, 0].set_xlim(*DRAG_LIMITS)
         path = folder / f"{name}.png"
-        FigureCanvasAgg(figure).print_png(str(path))
+        figure.savefig(path)
         written.append(path)
     return written
 

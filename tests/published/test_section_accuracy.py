@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import sys
 from dataclasses import dataclass, replace
 
 import numpy as np
@@ -11,11 +12,7 @@ from solver.errors import InputError
 from tests.published.measured_sections import SECTIONS
 from tests.published.section_accuracy import TARGETS, lines, main, meets, pooled, run
 from tests.published.section_comparison import (
-    CONVERGED,
-    DRAG,
-    RANGES,
     Column,
-    Comparison,
     column_of,
     compare,
     measured,
@@ -23,6 +20,8 @@ from tests.published.section_comparison import (
     peak_of,
     rising,
 )
+from tests.published.section_pictures import draw
+from tests.published.section_records import CONVERGED, DRAG, RANGES, Comparison
 
 CONVERGED_STATE, APPROXIMATE, MISSING, BEYOND_STALL = range(4)
 
@@ -295,6 +294,22 @@ def test_points_that_are_not_converged_reduce_the_share(plain, state, share):
     assert comparison.part(reynolds=RANGES["above 170k"]).figures().converged == 1.0
 
 
+def test_a_flow_without_any_converged_point_reaches_nothing(plain):
+    flow = plain["sd7003"]
+    empty = replace(
+        flow,
+        lift=np.full(flow.lift.shape, np.nan),
+        drag=np.full(flow.drag.shape, np.nan),
+        status=np.full(flow.status.shape, MISSING, np.uint8),
+    )
+    comparison = compare({"sd7003": empty})
+    figures, usual = comparison.figures(), compare({"sd7003": flow}).figures()
+    assert figures.converged == 0.0
+    assert figures.drag_points == figures.lift_points == figures.largest_runs == 0
+    assert figures.drag_missed == usual.drag_points + usual.drag_missed
+    assert any("–" in line for line in lines(comparison))
+
+
 def test_points_past_the_measured_stall_are_not_asked_for(plain):
     flow = plain["sd7003"]
     status = np.where(flow.angle[:, None] > np.radians(13.9), MISSING, flow.status)
@@ -387,12 +402,25 @@ def test_a_figure_that_is_not_a_number_does_not_meet_its_target():
     assert any("missed" in line for line in lines(compare({})))
 
 
-def test_pictures_are_written_or_politely_refused(tmp_path, monkeypatch, capsys, plain):
-    monkeypatch.setitem(__import__("sys").modules, "matplotlib.backends.backend_agg", None)
+def test_pictures_are_refused_before_solving_where_they_cannot_be_drawn(
+    tmp_path, monkeypatch, capsys
+):
+    def never(*_, **__):
+        raise AssertionError("solved")
+
+    monkeypatch.setitem(sys.modules, "matplotlib", None)
     with pytest.raises(SystemExit):
-        main(["--sections", "mh32", "--plot", str(tmp_path)], solve=made)
+        main(["--sections", "mh32", "--plot", str(tmp_path / "new")], solve=never)
     assert "needs matplotlib" in capsys.readouterr().err
     assert not list(tmp_path.iterdir())
+
+
+def test_a_picture_is_drawn_for_each_section(tmp_path, plain):
+    pytest.importorskip("matplotlib")
+    names = ["mh32", "sd7003"]
+    draw({name: plain[name] for name in names}, tmp_path / "new")
+    for name in names:
+        assert (tmp_path / "new" / f"{name}.png").read_bytes().startswith(b"\x89PNG")
 
 
 # --- what the table says
