@@ -18,6 +18,15 @@ from contextlib import suppress
 from typing import TYPE_CHECKING
 
 from app.cli_options import parser
+from app.cli_status import (
+    BROKEN,
+    DONE,
+    FAILS,
+    INTERRUPTED,
+    NOBODY_READS,
+    UNUSABLE,
+    UnusableError,
+)
 from app.log import log_file, start_log
 from app.version import version
 
@@ -25,14 +34,6 @@ if TYPE_CHECKING:
     from app.analysis.results import Results
     from app.inputs import Inputs
     from app.scenario import Scenario
-
-DONE, FAILS, UNUSABLE, BROKEN = 0, 1, 2, 3
-INTERRUPTED, NOBODY_READS = 130, 141
-"""What a shell reports for a command ended by Ctrl-C or a closed pipe."""
-
-
-class UnusableError(Exception):
-    """What the user gave cannot be used; the message is the whole answer."""
 
 
 def main(argv: Sequence[str] | None = None) -> int:
@@ -69,6 +70,7 @@ def _parser() -> argparse.ArgumentParser:
             "open": _open,
             "solve": _solve,
             "report": _report,
+            "section": _section,
             "fields": _fields,
         }
     )
@@ -260,6 +262,14 @@ def _unusable_section(inputs: Inputs, file: str) -> UnusableError | None:
             key = f"sections.{quoted(source.name)}"
             return UnusableError(f"{file}: {key} cannot be used: {error}")
     return None
+
+
+def _section(arguments: argparse.Namespace) -> int:
+    from app.cli_section import compute_polar
+
+    start_log(arguments.log_level)
+    _pin_loaded()
+    return compute_polar(arguments)
 
 
 def _fields(_arguments: argparse.Namespace) -> int:

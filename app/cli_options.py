@@ -8,6 +8,7 @@ from contextlib import suppress
 from pathlib import Path
 from typing import NoReturn, TypeAlias
 
+from app.cli_section_options import add_section_options
 from app.log import LEVELS
 from app.version import version
 
@@ -28,12 +29,13 @@ examples:
   halfspan solve my-drone.toml      its margins, as text
   halfspan solve my-drone.toml --json | jq .margins
   halfspan report my-drone.toml --output my-drone.html
+  halfspan section e387.csv --reynolds 100e3 200e3 --angles -6 18 0.5 --output polar.csv
   halfspan fields                   every input with unit, range, default, help
 
 exit status:
   0  done; with solve: no requirement fails
-  1  solve: at least one requirement fails
-  2  the command or the scenario file is unusable; one sentence says why
+  1  solve: at least one requirement fails; section: not one point was found
+  2  the command or a file is unusable; one sentence says why
   3  something inside went wrong; the sentence names the log file
 
 The notebook listens on this computer only and asks nothing of the internet.
@@ -66,6 +68,7 @@ def parser(actions: Mapping[str, Action]) -> argparse.ArgumentParser:
     _add_open(commands, actions["open"])
     _add_solve(commands, actions["solve"])
     _add_report(commands, actions["report"])
+    _add_section(commands, actions["section"])
     _add_fields(commands, actions["fields"])
     return command
 
@@ -143,6 +146,21 @@ def _add_report(commands: Commands, action: Action) -> None:
     reporting.add_argument("--note", default="", help="instead of the scenario's note")
     _add_log_level(reporting, argparse.SUPPRESS)
     reporting.set_defaults(action=action)
+
+
+def _add_section(commands: Commands, action: Action) -> None:
+    computing = commands.add_parser(
+        "section",
+        help="compute the polar of a section from its outline",
+        description=(
+            "Compute lift, drag, moment and transition of a section over angle and Reynolds "
+            "number, and write them as CSV. A sizing aid: verify by test."
+        ),
+        epilog="Exits with 1 and writes nothing when not one point is found.",
+    )
+    add_section_options(computing)
+    _add_log_level(computing, argparse.SUPPRESS)
+    computing.set_defaults(action=action)
 
 
 def _add_page_options(

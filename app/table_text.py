@@ -10,7 +10,7 @@ import hashlib
 import math
 import re
 import stat
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 from functools import cached_property
 from pathlib import Path
 
@@ -168,11 +168,6 @@ class Table:
                 self.file, "must be a finite number", line=row.line, column=column, value=text
             )
         return value
-
-    def without_headings(self) -> Table:
-        """Return the same table with its first row counted as numbers."""
-        first = Row(self.heading_line, self.headings)
-        return replace(self, headings=("",) * len(self.headings), rows=(first, *self.rows))
 
 
 def read_table_text(path: str | Path) -> TableText:

@@ -10,13 +10,14 @@ from __future__ import annotations
 
 import re
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from pathlib import Path
 
 import numpy as np
 from numpy.typing import NDArray
 
-from app.table_text import NUMBER, Row, Table, TableError, TableText, read_table
+from app.outline_table import read_outline
+from app.table_text import Row, Table, TableError, TableText, read_table
 from solver.errors import InputError
 from solver.section.sweeps import SAME_REYNOLDS, Sweep
 
@@ -70,7 +71,8 @@ RISING = {"up": True, "rising": True, "increasing": True, "1": True}
 FALLING = {"down": False, "falling": False, "decreasing": False, "-1": False}
 DIRECTIONS = {**RISING, **FALLING}
 
-MOST_OUTLINE_POINTS = 2000
+STATUS, MISSING = "status", "missing"
+"""Heading of how a computed point ended, and what it says where there is no point."""
 
 
 @dataclass(frozen=True)
@@ -171,8 +173,7 @@ def read_outline_table(
     Parameters
     ----------
     path : str or pathlib.Path or TableText
-        A CSV file of two columns, x and y, with or without headings; a comment line
-        ``# name: ...`` names the section.
+        A text of two columns, x and y, as :func:`app.outline_table.read_outline` takes it.
     unnamed : str, optional
         The name where the table gives none; that of the file unless given.
 
@@ -180,7 +181,7 @@ def read_outline_table(
     -------
     name : str
     coordinates : ndarray, shape (n, 2)
-        As they stand in the file, in any unit of length.
+        Once round the section, in the unit of the file.
 
     Raises
     ------
@@ -188,37 +189,8 @@ def read_outline_table(
         If anything in the file cannot be used. Whether the outline is closed and
         sound is for its geometry to say.
     """
-    table = read_table(path)
-    names = [c[5:].strip() for c in table.comments if c.lower().startswith("name:")]
-    name = (names[0] if names else "") or unnamed or Path(table.file).stem
-    if all(NUMBER.fullmatch(field) for field in table.headings):
-        table = table.without_headings()
-    indices = _outline_columns(table)
-    if len(table.rows) > MOST_OUTLINE_POINTS:
-        raise TableError(
-            table.file,
-            f"has {len(table.rows)} points; an outline may have {MOST_OUTLINE_POINTS}",
-        )
-    points = [
-        [table.number(row, i, "xy"[axis]) for axis, i in enumerate(indices)] for row in table.rows
-    ]
-    if len(points) < 3:
-        raise TableError(table.file, f"has {len(points)} points; an outline has three or more")
-    return name, np.array(points, dtype=np.float64)
-
-
-def _outline_columns(table: Table) -> tuple[int, int]:
-    words = [re.sub(r"[^a-z]", "", heading.lower().split("/")[0]) for heading in table.headings]
-    found = [words.index(axis) for axis in ("x", "y") if axis in words]
-    if len(found) == 2:
-        return found[0], found[1]
-    if len(table.headings) == 2 and not any(table.headings):
-        return 0, 1
-    raise TableError(
-        table.file,
-        f"has no columns x and y; its headings are {', '.join(table.headings) or 'none'}",
-        line=table.heading_line,
-    )
+    found = read_outline(path, unnamed=unnamed)
+    return found.name, found.coordinates
 
 
 def _read_runs(
@@ -227,7 +199,7 @@ def _read_runs(
     columns: Mapping[str, str] | None,
     units: Mapping[str, str] | None,
 ) -> list[Sweep]:
-    table = read_table(path)
+    table = _without_missing(read_table(path))
     found = _find_columns(table, columns or {}, units or {})
     for quantity in needed:
         if quantity not in found:
@@ -245,6 +217,17 @@ def _read_runs(
     }
     rising = [_direction(table, row, found.get("sweep")) for row in table.rows]
     return _runs(table, values, rising)
+
+
+def _without_missing(table: Table) -> Table:
+    """Leave out the points that a computation says it did not find."""
+    if STATUS not in table.headings:
+        return table
+    place = table.headings.index(STATUS)
+    rows = tuple(row for row in table.rows if row.fields[place] != MISSING)
+    if not rows:
+        raise TableError(table.file, f"has no rows but those whose {STATUS} is {MISSING}")
+    return replace(table, rows=rows)
 
 
 def _find_columns(

@@ -219,6 +219,23 @@ def test_what_is_no_outline_is_refused(write, text, part):
     assert part in str(caught.value)
 
 
+def test_computed_points_that_are_missing_are_passed_over(write):
+    text = "reynolds,angle_deg,cl,status\n" + "".join(
+        f"100000,{angle},{lift},{status}\n"
+        for angle, lift, status in (
+            (0, 0.1, "converged"),
+            (1, "", "missing"),
+            (2, 0.3, "beyond stall"),
+        )
+    )
+    (run,) = read_lift_table(write(text))
+    assert run.lift.tolist() == [0.1, 0.3]
+    with pytest.raises(TableError, match="no rows but those whose status is missing"):
+        read_lift_table(write("reynolds,angle_deg,cl,status\n100000,1,,missing\n"))
+    with pytest.raises(TableError, match="line 3, column 'cl': must be a finite number"):
+        read_lift_table(write(text.replace("missing", "converged")))
+
+
 def test_codes_of_solver_and_results_are_the_same():
     assert {o.name: o.value for o in CellOrigin} == {o.name: o.value for o in Origin}
     assert (packed.VALID, packed.EXTRAPOLATED, packed.INDICATIVE) == (
