@@ -18,15 +18,8 @@ from contextlib import suppress
 from typing import TYPE_CHECKING
 
 from app.cli_options import parser
-from app.cli_status import (
-    BROKEN,
-    DONE,
-    FAILS,
-    INTERRUPTED,
-    NOBODY_READS,
-    UNUSABLE,
-    UnusableError,
-)
+from app.cli_status import BROKEN, DONE, FAILS, INTERRUPTED, NOBODY_READS, UNUSABLE, UnusableError
+from app.cli_threads import pin_loaded, pin_threads
 from app.log import log_file, start_log
 from app.version import version
 
@@ -74,22 +67,6 @@ def _parser() -> argparse.ArgumentParser:
             "fields": _fields,
         }
     )
-
-
-def pin_threads() -> None:
-    """Keep the linear algebra on one thread: small systems only lose by more.
-
-    Takes effect for libraries loaded afterwards; :func:`_pin_loaded` sees to
-    those that ask differently.
-    """
-    for library in ("OPENBLAS", "OMP", "MKL", "VECLIB_MAXIMUM", "BLIS", "NUMEXPR"):
-        os.environ[f"{library}_NUM_THREADS"] = "1"
-
-
-def _pin_loaded() -> None:
-    from threadpoolctl import threadpool_limits  # type: ignore[import-untyped]
-
-    threadpool_limits(limits=1, user_api="blas")
 
 
 def _run(arguments: argparse.Namespace) -> int:
@@ -145,7 +122,7 @@ def _serve(file: str, arguments: argparse.Namespace, *, own: str | None = None) 
         raise blamed
     from app.notebook import serve
 
-    _pin_loaded()
+    pin_loaded()
 
     # Where none is given, the notebook knows the place.
     chosen = {} if arguments.journal is None else {"journal": arguments.journal}
@@ -193,7 +170,7 @@ def analyse(inputs: Inputs) -> Results:
 def _solve(arguments: argparse.Namespace) -> int:
     start_log(arguments.log_level)
     scenario = _scenario(arguments.file)
-    _pin_loaded()
+    pin_loaded()
     results = _answer(scenario, arguments.file)
     oddities = tuple(one.sentence for one in scenario.oddities())
     if arguments.json:
@@ -216,7 +193,7 @@ def _report(arguments: argparse.Namespace) -> int:
     for scenario, file in zip(scenarios, arguments.files, strict=True):
         if blamed := _unusable_section(scenario.freeze(), file):
             raise blamed
-    _pin_loaded()
+    pin_loaded()
     try:
         path = make_report(
             [(scenario, None) for scenario in scenarios],
@@ -268,7 +245,7 @@ def _section(arguments: argparse.Namespace) -> int:
     from app.cli_section import compute_polar
 
     start_log(arguments.log_level)
-    _pin_loaded()
+    pin_loaded()
     return compute_polar(arguments)
 
 

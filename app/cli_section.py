@@ -95,7 +95,8 @@ def compute_polar(arguments: argparse.Namespace) -> int:
 def _say(sentence: str) -> None:
     """Tell the user, beside the data; whoever does not listen stops nothing."""
     with suppress(OSError, ValueError):
-        print(sentence, file=sys.stderr, flush=True)
+        sys.stderr.write(f"{sentence}\n")  # in one piece: several threads speak
+        sys.stderr.flush()
 
 
 def _output(text: str, outline: str) -> Path:
