@@ -196,7 +196,7 @@ def _pairs(
             breaks[len(points)] = line.number
         else:
             raise _no_pair(file, line, separator)
-    return np.array(points, dtype=np.float64), rows, breaks
+    return np.array(points, dtype=np.float64).reshape(-1, 2), rows, breaks
 
 
 def _no_pair(file: str, line: _Line, separator: str | None) -> TableError:
@@ -255,7 +255,7 @@ def _arranged(
     file: str, points: FloatArray, rows: list[int], breaks: dict[int, int | None]
 ) -> tuple[FloatArray, list[int]]:
     """The points once round the section; refused where they do not run so."""
-    counts = _counts(file, points, rows)
+    counts = _counts(file, points, rows) if len(points) > 1 else None
     if counts is not None:
         points, rows = points[1:], rows[1:]
         breaks = {place - 1: line for place, line in breaks.items() if place > 1}
@@ -287,7 +287,7 @@ def _counts(file: str, points: FloatArray, rows: Sequence[int]) -> tuple[int, in
     """How many points the two surfaces have, where the first row says it."""
     first, others = points[0], points[1:]
     whole = bool(np.all(first == np.round(first)) and np.all(first >= FEWEST_COUNTED))
-    if len(others) == 0 or not whole:
+    if not whole:
         return None
     upper, lower = int(first[0]), int(first[1])
     if upper + lower == len(others):

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import os
+import re
 import signal
 import sys
 import threading
@@ -361,3 +362,15 @@ def test_statuses_have_a_word_each(solver):
         PointStatus.MISSING: "missing",
         PointStatus.BEYOND_STALL: "beyond stall",
     }
+
+
+def test_the_manual_names_every_option_column_and_status(solver, capsys):
+    from app.section_csv import COLUMNS, status_words
+
+    manual = (FOLDER.parent / "docs" / "command-line.md").read_text(encoding="utf-8")
+    with pytest.raises(SystemExit):
+        cli.main(["section", "--help"])
+    options = set(re.findall(r"--[a-z-]+", capsys.readouterr().out)) - {"--help"}
+    assert len(options) == 10
+    for name in (*options, *COLUMNS, *status_words().values()):
+        assert f"`{name}" in manual, name
