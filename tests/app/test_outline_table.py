@@ -129,7 +129,7 @@ def test_the_name_of_the_caller_stands_in_for_that_of_the_file():
     [
         ("only words\n", "has no points"),
         ("x y\n", "has no points"),
-        ("y x\nno points\n", "has 0 points; an outline has three or more"),
+        ("y;x\nno;points\n", "has 0 points; an outline has three or more"),
         ("1 0\n0 0\n", "has 2 points; an outline has three or more"),
         (text_of(np.repeat(ROUND, 40, axis=0)), "has 2440 points; an outline may have 2000"),
         (text_of(ROUND[:, [0, 1, 1]]), "line 1: has no columns x and y"),
