@@ -15,6 +15,7 @@ from solver.section.outline_checks import (
     check_point_list,
     check_shape,
     closing_gap,
+    printed_step,
     runs_lower_side_first,
 )
 
@@ -38,12 +39,19 @@ class Outline:
         it closes, is both the first and the last point.
     turned_round : bool
         The list it came from began along the lower surface and was turned round.
+    rounding : float
+        Step to which the list it came from was printed; 0 where it was not. [-]
+    corners : tuple of int
+        Points where its slope or curvature jumps, save the trailing edge: those of a
+        deflected flap. No smooth curve runs through them.
     """
 
     name: str
     x: FloatArray
     y: FloatArray
     turned_round: bool = False
+    rounding: float = 0.0
+    corners: tuple[int, ...] = ()
 
 
 @dataclass(frozen=True, eq=False)
@@ -199,7 +207,8 @@ def outline_from_coordinates(name: str, coordinates: ArrayLike) -> Outline:
     chord = closing_gap(points).trailing_edge[0] - foremost[0]
     scaled = (points - foremost) / chord
     check_shape(scaled, turned=turned)
-    return Outline(name, scaled[:, 0].copy(), scaled[:, 1].copy(), turned)
+    rounding = printed_step(points[:, 1]) / chord
+    return Outline(name, scaled[:, 0].copy(), scaled[:, 1].copy(), turned, rounding)
 
 
 @lru_cache(maxsize=64)

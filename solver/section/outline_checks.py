@@ -21,6 +21,8 @@ LARGEST_GAP = 0.01
 """Height of an open trailing edge over chord."""
 PRINT_ROUNDING = 5e-5
 """Play for lists printed to four or five decimals of the chord. [-]"""
+MOST_DECIMALS = 7
+"""Numbers with more were not printed but computed."""
 LARGEST_SLANT = 0.15
 """Of an open trailing edge against square: about 9 degrees."""
 NOSE_SHARE = 0.05
@@ -178,6 +180,27 @@ def runs_lower_side_first(points: FloatArray) -> bool:
     """
     x, y = points.T
     return bool(np.sum(x * np.roll(y, -1) - np.roll(x, -1) * y) < 0.0)
+
+
+def printed_step(values: FloatArray) -> float:
+    """Find the step to which numbers were printed.
+
+    Parameters
+    ----------
+    values : numpy.ndarray, shape (n,)
+        In any unit.
+
+    Returns
+    -------
+    float
+        The largest power of ten of which all values are multiples, one at the most;
+        0 where they have more than seven decimals.
+    """
+    for decimals in range(MOST_DECIMALS + 1):
+        scaled = values * 10.0**decimals
+        if np.all(np.abs(scaled - np.round(scaled)) < 1e-4):
+            return 10.0**-decimals
+    return 0.0
 
 
 def check_shape(points: FloatArray, *, turned: bool) -> None:

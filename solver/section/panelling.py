@@ -10,18 +10,30 @@ from scipy.interpolate import CubicSpline
 from scipy.optimize import brentq
 
 from solver.errors import InputError
+from solver.section.fairing import closed_points, fair_outline
 from solver.section.geometry import Outline, cosine_spacing
+from solver.section.outline_checks import PRINT_ROUNDING
 
 FloatArray = NDArray[np.float64]
 
 FEWEST_NODES, MOST_NODES = 81, 301
+LENGTH_ROUNDS = 4
+"""Of finding lengths along a curve through points; each gains two digits or more."""
+LEAST_WEDGE = 0.002
+"""Thickness over distance from the trailing edge: 0.1 degrees, within the print of a cusp."""
+WEDGE_REACH = 0.05
+"""Of that wedge, over chord: ahead of it the thickness may be as small as at its end."""
+MOST_UNEVEN = 2.0
+"""Of the two surfaces' lengths, and so of the panels that meet at the leading edge."""
 
 
 @dataclass(frozen=True, eq=False)
 class PanelNodes:
     """Ends of the panels, once round the section: first and last node are the same point.
 
-    The middle node (index n // 2) is the leading edge.
+    The middle node (index n // 2) is the leading edge: the place of the outline
+    farthest from the trailing edge, where the tangent stands square to the line
+    between the two.
 
     Parameters
     ----------
@@ -56,53 +68,108 @@ def panel_nodes(outline: Outline, *, nodes: int = 141) -> PanelNodes:
     Raises
     ------
     InputError
-        Named ``nodes``, if they are even in number or out of range.
+        Named ``nodes``, if they are even in number or out of range; named
+        ``coordinates``, saying where, if the outline leaves no room between its
+        surfaces or one of them is more than twice as long as the other.
 
     Notes
     -----
     An open trailing edge is closed by moving each surface by half the gap times x.
-    The leading edge is the point farthest from the trailing edge.
+    The nodes lie on the smooth curve of :func:`solver.section.fairing.fair_outline`,
+    or, where the outline has corners, on cubic splines in length along the surface
+    through its points from corner to corner. A node is not laid on a corner: the
+    spacing stays the same wherever a hinge is.
+
+    Surfaces closer than a wedge of 0.1 degrees at the trailing edge, or crossed by
+    less than the print of a list can tell, are parted to that wedge.
     """
     if nodes % 2 == 0 or not FEWEST_NODES <= nodes <= MOST_NODES:
         raise InputError("nodes", nodes, f"odd and between {FEWEST_NODES} and {MOST_NODES}")
-    points = _closed(outline)
-    along = np.concatenate([[0.0], np.cumsum(np.hypot(*np.diff(points, axis=0).T))])
-    curve = CubicSpline(along, points)
-    fine = np.linspace(0.0, along[-1], 20 * len(along))
-    length = CubicSpline(fine, np.hypot(*curve(fine, 1).T)).antiderivative()
-    nose = _leading_edge(curve, along, points)
+    corners = outline.corners
+    points = closed_points(outline if corners else fair_outline(outline).outline)
+    pieces = [
+        _by_length(points[one : other + 1])
+        for one, other in zip((0, *corners), (*corners, len(points) - 1), strict=True)
+    ]
+    starts = np.concatenate([[0.0], np.cumsum([piece.x[-1] for piece in pieces])])
+    nose = _leading_edge(pieces, starts)
     share = cosine_spacing(nodes // 2 + 1)
-    wanted = np.concatenate(
-        [
-            length(nose) * share,
-            length(nose) + (length(along[-1]) - length(nose)) * share[1:],
-        ]
-    )
-    place = np.interp(wanted, length(fine), fine)
-    for _ in range(4):
-        place -= (length(place) - wanted) / length(place, 1)
-    found = curve(np.clip(place, 0.0, along[-1]))
-    found[[0, -1]] = points[0]
-    return PanelNodes(found[:, 0].copy(), found[:, 1].copy(), wanted)
+    _check_evenness(nose, starts[-1])
+    arc = np.concatenate([nose * share, nose + (starts[-1] - nose) * share[1:]])
+    laid = np.empty((nodes, 2))
+    for piece, start, end in zip(pieces, starts[:-1], starts[1:], strict=True):
+        here = (arc >= start) & (arc <= end)
+        laid[here] = piece(arc[here] - start)
+    laid[[0, -1]] = points[0]
+    laid = _parted(laid)
+    return PanelNodes(laid[:, 0].copy(), laid[:, 1].copy(), arc)
 
 
-def _closed(outline: Outline) -> FloatArray:
-    """Points of an outline with its trailing edge brought to one point."""
-    points = np.column_stack([outline.x, outline.y])
-    near = int(np.argmin(points[:, 0]))
-    gap = points[0] - points[-1]
-    share = (points[:, :1] - points[near, 0]) / (points[[0, -1], 0].mean() - points[near, 0])
-    side = np.where(np.arange(len(points)) < near, -0.5, 0.5)[:, None]
-    closed = points + side * share * gap
-    closed[[0, -1]] = 0.5 * (points[0] + points[-1])
-    return np.asarray(closed, dtype=np.float64)
+def _by_length(points: FloatArray) -> CubicSpline:
+    """Lay a cubic spline through points, over length along itself (from 0)."""
+    at, weight = np.polynomial.legendre.leggauss(5)
+    along = np.concatenate([[0.0], np.cumsum(np.hypot(*np.diff(points, axis=0).T))])
+    for _ in range(LENGTH_ROUNDS):
+        curve = CubicSpline(along, points)
+        step = np.diff(along)
+        speed = np.hypot(
+            *np.moveaxis(curve(along[:-1, None] + 0.5 * step[:, None] * (at + 1.0), 1), -1, 0)
+        )
+        along = np.concatenate([[0.0], np.cumsum(0.5 * step * (speed @ weight))])
+    return CubicSpline(along, points)
 
 
-def _leading_edge(curve: CubicSpline, along: FloatArray, points: FloatArray) -> float:
-    """Place along the curve farthest from its first point."""
-    near = int(np.argmax(np.hypot(*(points - points[0]).T)))
+def _leading_edge(pieces: list[CubicSpline], starts: FloatArray) -> float:
+    """Length along the outline to the place farthest from the trailing edge."""
+    edge = pieces[0](0.0)
+    reach = [float(np.hypot(*(piece(piece.x) - edge).T).max()) for piece in pieces]
+    at = int(np.argmax(reach))
+    piece = pieces[at]
+    near = int(np.argmax(np.hypot(*(piece(piece.x) - edge).T)))
 
-    def turning(place: float) -> float:
-        return float((curve(place) - points[0]) @ curve(place, 1))
+    def turning(along: float) -> float:
+        return float((piece(along) - edge) @ piece(along, 1))
 
-    return float(brentq(turning, along[near - 1], along[near + 1], xtol=1e-14))
+    low, high = piece.x[max(near - 1, 0)], piece.x[min(near + 1, len(piece.x) - 1)]
+    if turning(low) * turning(high) > 0.0:
+        raise InputError(
+            "coordinates",
+            f"a leading edge at a corner, x = {100 * piece(low)[0]:.1f} % of chord",
+            "of a section with a round nose",
+        )
+    return float(starts[at]) + float(brentq(turning, low, high, xtol=1e-14))
+
+
+def _check_evenness(upper: float, whole: float) -> None:
+    ratio = upper / (whole - upper)
+    if not 1.0 / MOST_UNEVEN <= ratio <= MOST_UNEVEN:
+        raise InputError(
+            "coordinates",
+            f"an upper surface {ratio:.2f} times as long as the lower one",
+            "of a section whose surfaces are of like length (within a factor of two)",
+        )
+
+
+def _parted(laid: FloatArray) -> FloatArray:
+    """Part surfaces that lie closer than a wedge at the trailing edge; refuse crossed ones."""
+    half = len(laid) // 2
+    upper, lower = laid[: half + 1], laid[: half - 1 : -1]
+    middle = 0.5 * (upper + lower)
+    along = np.gradient(middle, axis=0)  # towards the leading edge
+    across = np.column_stack([along[:, 1], -along[:, 0]]) / np.hypot(*along.T)[:, None]
+    room = ((upper - lower) * across).sum(axis=1)
+    least = LEAST_WEDGE * np.minimum(np.hypot(*(middle - laid[0]).T), WEDGE_REACH)
+    lacking = np.where(np.arange(half + 1) < half, np.maximum(least - room, 0.0), 0.0)
+    lacking[0] = 0.0
+    at = int(np.argmax(lacking))
+    if lacking[at] > 2.0 * PRINT_ROUNDING:
+        raise InputError(
+            "coordinates",
+            f"a thickness of {100 * room[at]:.3f} % of chord at x = {100 * middle[at, 0]:.1f} %",
+            "of a section with room between its surfaces up to the trailing edge",
+        )
+    shift = 0.5 * lacking[:, None] * across
+    parted = laid.copy()
+    parted[: half + 1] += shift
+    parted[: half - 1 : -1] -= shift
+    return parted
