@@ -1,6 +1,6 @@
 """Closures of the boundary layer against computed similar layers, and what follows from them.
 
-Marched here by an integrator of its own, with the closures of `second_residual`.
+Marched here by an integrator of its own, with `second_closures`.
 """
 
 from __future__ import annotations
@@ -12,8 +12,9 @@ import pytest
 from scipy.integrate import OdeSolution, solve_ivp
 
 from tests.published.tables import numbers, rows
-from tests.solver.section import second_residual as second
-from tests.solver.section.second_residual import PUBLISHED
+from tests.solver.section import second_closures as closures
+from tests.solver.section.second_closures import PUBLISHED
+from tests.solver.section.second_residual import LAG_CONSTANT
 
 pytestmark = pytest.mark.published
 
@@ -40,7 +41,7 @@ def test_the_table_of_similar_layers_is_consistent():
 
 def test_laminar_energy_shape_of_similar_layers():
     table = similar_layers()
-    off = second.laminar_energy_shape(table["H"]) - table["H32"]
+    off = closures.laminar_energy_shape(table["H"]) - table["H32"]
     # Model error of the fit: 0.0024 attached; with backflow it was made less steep.
     assert np.max(np.abs(off[table["H"] < 4.2])) < 0.0025
     assert np.max(np.abs(off[table["H"] < 5.5])) < 0.01
@@ -50,13 +51,13 @@ def test_laminar_energy_shape_of_similar_layers():
 def test_laminar_friction_of_similar_layers():
     table = similar_layers()
     H, wanted = table["H"], table["cf_Retheta"]
-    off = second.laminar_friction(H, ONE) - wanted
+    off = closures.laminar_friction(H, ONE) - wanted
     # Model error of the fit: best near the flat plate, up to a tenth of the plate's
     # friction near separation, which it puts at H of 4.14 and not 4.03.
     assert np.max(np.abs(off[(H > 2.45) & (H < 2.8)])) < 0.0015
     assert np.max(np.abs(off)) < 0.03
     crossing = np.interp(
-        0.0, -second.laminar_friction(np.linspace(3.9, 4.3), ONE), np.linspace(3.9, 4.3)
+        0.0, -closures.laminar_friction(np.linspace(3.9, 4.3), ONE), np.linspace(3.9, 4.3)
     )
     assert crossing == pytest.approx(4.03, abs=0.12)
 
@@ -66,7 +67,7 @@ def test_laminar_dissipation_of_similar_layers():
     # Energy equation in similar variables: Re_theta 2 CD / Hs = theta^2 (1 + 2 beta).
     wanted = table["theta"] ** 2 * (1.0 + 2.0 * table["beta"])
     # Model error of the fit.
-    assert second.laminar_dissipation(table["H"], ONE) == pytest.approx(wanted, abs=0.0018)
+    assert closures.laminar_dissipation(table["H"], ONE) == pytest.approx(wanted, abs=0.0018)
 
 
 def test_growth_of_thickness_of_similar_layers():
@@ -74,16 +75,16 @@ def test_growth_of_thickness_of_similar_layers():
     H, theta, beta = table["H"], table["theta"], table["beta"]
     usual = (H > 2.2) & (H < 4.5)
     # Model error of the fits, of values between 0 and 0.75 and between -0.07 and 0.09.
-    length = second.length_function(H)[usual]
+    length = closures.length_function(H)[usual]
     assert length == pytest.approx(theta[usual] ** 2 * (2.0 - beta[usual]), abs=0.018)
-    pressure = second.pressure_function(H)[usual]
+    pressure = closures.pressure_function(H)[usual]
     assert pressure == pytest.approx(beta[usual] * theta[usual] ** 2, abs=0.006)
 
 
 def test_amplification_envelope():
     for row in numbers(f"{FOLDER}/en_envelope.csv"):
         H = np.array(row["H"])
-        growth, critical = second.growth_over_reynolds(H), second.critical_reynolds(H)
+        growth, critical = closures.growth_over_reynolds(H), closures.critical_reynolds(H)
         # Half a unit of the last printed digit.
         assert growth == pytest.approx(row["dN_dRetheta"], abs=5.1e-6)
         assert critical == pytest.approx(row["Re_theta0"], abs=0.051)
@@ -107,8 +108,8 @@ def laminar_march(
     def slopes(x: float, state: np.ndarray) -> list[float]:
         theta, H = (np.array(one) for one in state)
         ue, rate = speed(x), slope(x) / speed(x)
-        friction = float(second.laminar_friction(H, ue * theta))
-        loss = float(second.laminar_dissipation(H, ue * theta))
+        friction = float(closures.laminar_friction(H, ue * theta))
+        loss = float(closures.laminar_dissipation(H, ue * theta))
         energy, change = (float(one) for one in _energy_shape(H))
         thicker = 0.5 * friction - (2.0 + H) * theta * rate
         bent = energy / change * ((loss - 0.5 * friction) / theta - (1.0 - H) * rate)
@@ -134,8 +135,8 @@ def laminar_march(
 
 def _energy_shape(H: np.ndarray) -> tuple[np.ndarray, np.ndarray]:
     step = 1e-6
-    up, down = second.laminar_energy_shape(H + step), second.laminar_energy_shape(H - step)
-    return second.laminar_energy_shape(H), (up - down) / (2.0 * step)
+    up, down = closures.laminar_energy_shape(H + step), closures.laminar_energy_shape(H - step)
+    return closures.laminar_energy_shape(H), (up - down) / (2.0 * step)
 
 
 def test_a_flat_plate_forgets_how_it_began_and_becomes_the_blasius_layer():
@@ -192,19 +193,19 @@ def turbulent_plate(*, start: float, H: float) -> OdeSolution:
     def slopes(log: float, state: np.ndarray) -> list[float]:
         at, shear = (np.array(one) for one in state)
         Rt = np.array(np.exp(log))
-        friction = second.turbulent_friction(at, Rt)
-        loss = second.turbulent_dissipation(at, Rt, shear, PUBLISHED)
+        friction = closures.turbulent_friction(at, Rt)
+        loss = closures.turbulent_dissipation(at, Rt, shear, PUBLISHED)
         length = 2.0 * Rt / friction  # dx / d ln(theta) over nu / ue
         step = 1e-6
-        by_shape = _rise(lambda d: second.turbulent_energy_shape(at + d, Rt), step)
-        by_log = _rise(lambda d: second.turbulent_energy_shape(at, Rt * np.exp(d)), step)
-        energy = second.turbulent_energy_shape(at, Rt)
+        by_shape = _rise(lambda d: closures.turbulent_energy_shape(at + d, Rt), step)
+        by_log = _rise(lambda d: closures.turbulent_energy_shape(at, Rt * np.exp(d)), step)
+        energy = closures.turbulent_energy_shape(at, Rt)
         bent = (energy * (loss - 0.5 * friction) / Rt * length - by_log) / by_shape
-        lag = second.LAG_CONSTANT / (2.0 * second.layer_thickness(at, Rt, at * Rt))
-        wanted = second.equilibrium_shear(at, Rt)
+        lag = LAG_CONSTANT / (2.0 * closures.layer_thickness(at, Rt, at * Rt))
+        wanted = closures.equilibrium_shear(at, Rt)
         return [float(bent), float(shear * lag * (wanted - shear) * length)]
 
-    first = (H, float(second.initial_shear(np.array(H), np.array(start))))
+    first = (H, float(closures.initial_shear(np.array(H), np.array(start))))
     span = (np.log(start), np.log(12_000.0))
     found = solve_ivp(slopes, span, first, method="LSODA", rtol=1e-8, atol=1e-10, dense_output=True)
     return found.sol
@@ -221,7 +222,7 @@ def test_turbulent_flat_plate():
     for row in table:
         (H, _), (other, _) = (layer(np.log(row["Re_theta"])) for layer in layers)
         assert pytest.approx(other, abs=5e-4) == H  # how it began is forgotten
-        friction = float(second.turbulent_friction(H, np.array(row["Re_theta"])))
+        friction = float(closures.turbulent_friction(H, np.array(row["Re_theta"])))
         # Oesterlund's correlation of measurements, itself good to 1 or 2 %; the methods of
         # Green and of Head in the table are 3 to 10 % away from it.
         assert friction == pytest.approx(row["cf_osterlund"], rel=0.04)

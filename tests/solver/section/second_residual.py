@@ -1,9 +1,7 @@
 """The boundary layer's cell equations once more, in plain numpy, to be set beside the kernels.
 
-Two-equation integral method with lag: M. Drela, M. B. Giles, AIAA J. 25(10), 1987;
-lag after J. E. Green, D. J. Weeks, J. W. F. Brooman, RAE R&M 3791, 1973; amplification
-in the manner of J. L. van Ingen, Delft VTH-74, 1956. Constants from memory of the
-papers; `tests/published` holds the closures against tables of computed layers.
+Two-equation integral method with lag (M. Drela, M. B. Giles, AIAA J. 25(10), 1987)
+with the relations of `second_closures`.
 
 Lengths are over chord, speeds over the free stream, everything is dimensionless. All
 functions work station by station or cell by cell on arrays. Nothing of the solver is
@@ -12,42 +10,28 @@ imported here.
 
 from __future__ import annotations
 
-from dataclasses import dataclass
-from typing import Literal
+from dataclasses import dataclass, replace
 
 import numpy as np
-from numpy.typing import NDArray
 
-Array = NDArray[np.float64]
+from tests.solver.section.second_closures import (
+    INITIAL_SHEAR,
+    Array,
+    Closures,
+    equilibrium_shear,
+    growth_rate,
+    initial_shear,
+    laminar_dissipation,
+    laminar_energy_shape,
+    laminar_friction,
+    layer_thickness,
+    turbulent_dissipation,
+    turbulent_energy_shape,
+    turbulent_friction,
+)
 
 LAG_CONSTANT = 4.2
-INITIAL_SHEAR = 0.7
-"""Square of the ratio of the turbulent stress at transition to that in equilibrium."""
 STAGNATION_CONSTANT = 0.513
-STAGNATION_SHAPE = 0.64790 / 0.29234
-
-
-@dataclass(frozen=True)
-class Closures:
-    """What may be changed in the closure relations.
-
-    Parameters
-    ----------
-    separated_growth : float
-        Factor on the growth of disturbances in separated profiles; 1 is as published.
-    ramp : {"linear", "smooth"}
-        How that factor comes in between H of 3.5 and 4.5.
-    extra_dissipation : float
-        Relative rise of the turbulent dissipation for each unit of H above 2.5; 0 is as
-        published.
-    """
-
-    separated_growth: float = 0.6
-    ramp: Literal["linear", "smooth"] = "linear"
-    extra_dissipation: float = 0.1
-
-
-PUBLISHED = Closures(separated_growth=1.0, extra_dissipation=0.0)
 
 
 @dataclass(frozen=True, eq=False)
@@ -65,8 +49,7 @@ class Side:
     amplification : numpy.ndarray, shape (n,)
         n of e^n; anything behind transition.
     shear : numpy.ndarray, shape (n,)
-        Square root of the shear stress coefficient; anything ahead of transition, but
-        at the last station ahead of it the solver's own initial value.
+        Square root of the shear stress coefficient; anything ahead of transition.
     """
 
     xi: Array
@@ -93,123 +76,6 @@ class Residuals:
     growth: Array
     lag: Array
     turbulent: Array
-
-
-# Laminar layer
-
-
-def laminar_energy_shape(H: Array) -> Array:
-    steep = np.where(H < 4.0, 0.076, 0.040)
-    return np.asarray(1.515 + steep * (H - 4.0) ** 2 / H)
-
-
-def laminar_friction(H: Array, Rt: Array) -> Array:
-    """Find cf."""
-    attached = -0.067 + 0.01977 * (7.4 - H) ** 2 / (H - 1.0)
-    far = np.maximum(H, 7.4)
-    separated = -0.067 + 0.022 * (1.0 - 1.4 / (far - 6.0)) ** 2
-    return np.asarray(2.0 * np.where(H < 7.4, attached, separated) / Rt)
-
-
-def laminar_dissipation(H: Array, Rt: Array) -> Array:
-    """Find 2 CD / Hs."""
-    attached = 0.207 + 0.00205 * np.maximum(4.0 - H, 0.0) ** 5.5
-    beyond = (H - 4.0) ** 2
-    separated = 0.207 - 0.003 * beyond / (1.0 + 0.02 * beyond)
-    return np.asarray(np.where(H < 4.0, attached, separated) / Rt)
-
-
-# Amplification
-
-
-def growth_over_reynolds(H: Array) -> Array:
-    """Find dn/dRt of the envelope."""
-    inner = 2.4 * H - 3.7 + 2.5 * np.tanh(1.5 * H - 4.65)
-    return np.asarray(0.01 * np.sqrt(inner**2 + 0.25))
-
-
-def critical_reynolds(H: Array) -> Array:
-    """Find the Rt at which disturbances begin to grow."""
-    bend = 1.0 / (H - 1.0)
-    power = (1.415 * bend - 0.489) * np.tanh(20.0 * bend - 12.9) + 3.295 * bend + 0.44
-    return np.asarray(10.0**power)
-
-
-def length_function(H: Array) -> Array:
-    """Find l = Re ue theta^2 / xi of similar layers."""
-    return np.asarray((6.54 * H - 14.07) / H**2)
-
-
-def pressure_function(H: Array) -> Array:
-    """Find m l = Re theta^2 due/dxi of similar layers, ue growing with the power m of xi."""
-    return np.asarray(0.058 * (H - 4.0) ** 2 / (H - 1.0) - 0.068)
-
-
-def switched_on(Rt: Array, critical: Array) -> Array:
-    """Cubic ramp of the growth about the critical Rt, 0.08 in log10 either way."""
-    t = np.clip((np.log10(Rt / critical) + 0.08) / 0.16, 0.0, 1.0)
-    return np.asarray(t * t * (3.0 - 2.0 * t))
-
-
-def growth_rate(H: Array, theta: Array, Rt: Array, closures: Closures) -> Array:
-    """Find dn/dxi."""
-    along = 0.5 * (pressure_function(H) + length_function(H)) / theta
-    start = switched_on(Rt, critical_reynolds(H))
-    t = np.clip(H - 3.5, 0.0, 1.0)
-    if closures.ramp == "smooth":
-        t = t * t * (3.0 - 2.0 * t)
-    slower = 1.0 - (1.0 - closures.separated_growth) * t
-    return np.asarray(growth_over_reynolds(H) * along * start * slower)
-
-
-# Turbulent layer
-
-
-def turbulent_friction(H: Array, Rt: Array) -> Array:
-    """Find cf."""
-    decades = np.log10(np.maximum(Rt, 20.0))
-    wall = 0.3 * np.exp(-1.33 * H) * decades ** (-1.74 - 0.31 * H)
-    return np.asarray(wall + 0.00011 * (np.tanh(4.0 - H / 0.875) - 1.0))
-
-
-def turbulent_energy_shape(H: Array, Rt: Array) -> Array:
-    R = np.maximum(Rt, 200.0)
-    H0 = np.where(R < 400.0, 4.0, 3.0 + 400.0 / R)
-    base = 1.505 + 4.0 / R
-    under = (0.165 - 1.6 / np.sqrt(R)) * np.maximum(H0 - H, 0.0) ** 1.6 / H
-    over = np.maximum(H - H0, 0.0)
-    log = np.log(R)
-    beyond = over**2 * (0.04 / H + 0.007 * log / (over + 4.0 / log) ** 2)
-    return np.asarray(base + np.where(H < H0, under, beyond))
-
-
-def slip_speed(H: Array, Hs: Array, *, wake: bool) -> Array:
-    slip = 0.5 * Hs * (1.0 - 4.0 * (H - 1.0) / (3.0 * H))
-    return np.asarray(np.minimum(slip, 0.99 if wake else 0.95))
-
-
-def layer_thickness(H: Array, theta: Array, dstar: Array) -> Array:
-    return np.asarray(np.minimum(theta * (3.15 + 1.72 / (H - 1.0)) + dstar, 12.0 * theta))
-
-
-def equilibrium_shear(H: Array, Rt: Array, *, wake: bool = False) -> Array:
-    """Find S_eq, the square root of the shear stress coefficient in equilibrium."""
-    Hs = turbulent_energy_shape(H, Rt)
-    slip = slip_speed(H, Hs, wake=wake)
-    return np.asarray(np.sqrt(0.015 * Hs * (H - 1.0) ** 3 / ((1.0 - slip) * H**3)))
-
-
-def turbulent_dissipation(
-    H: Array, Rt: Array, shear: Array, closures: Closures, *, wake: bool = False
-) -> Array:
-    """Find 2 CD / Hs."""
-    Hs = turbulent_energy_shape(H, Rt)
-    slip = slip_speed(H, Hs, wake=wake)
-    friction = np.zeros_like(H) if wake else turbulent_friction(H, Rt)
-    CD = 0.5 * friction * slip + shear**2 * (1.0 - slip)
-    CD = CD * (1.0 + closures.extra_dissipation * np.maximum(H - 2.5, 0.0))
-    halves = 2.0 if wake else 1.0
-    return np.asarray(2.0 * halves * CD / Hs)
 
 
 # Cells
@@ -290,12 +156,15 @@ def wall_residuals(
     -------
     Residuals
         In the cell with transition, momentum and shape are laminar and turbulent ones
-        weighted by their shares of it; growth is laminar over the whole cell, and the
-        lag is left out there (it starts inside the cell).
+        weighted by their shares of it, the turbulent ones with the initial stress at
+        its beginning; growth is laminar over the whole cell, and the lag begins with
+        the initial stress at the place of transition.
     """
     chosen = closures or Closures()
     H, Rt = side.dstar / side.theta, reynolds * side.ue * side.theta
     share = turbulent_share(side, critical=critical, trip=trip)
+    ahead = np.append(share < 1.0, share[-1] == 0.0)
+    side = replace(side, shear=np.where(ahead, initial_shear(H, Rt), side.shear))
     friction = laminar_friction(H, Rt), turbulent_friction(H, Rt)
     energy = laminar_energy_shape(H), turbulent_energy_shape(H, Rt)
     dissipation = (
@@ -304,13 +173,11 @@ def wall_residuals(
     )
     momentum = [_momentum(side, one) for one in friction]
     shape = [_shape(side, *one) for one in zip(energy, dissipation, friction, strict=True)]
-    rate = growth_rate(H, side.theta, Rt, chosen)
-    growth = np.diff(side.amplification) - np.diff(side.xi) * _mean(rate)
     return Residuals(
         momentum=_blend(share, *momentum),
         shape=_blend(share, *shape),
-        growth=np.where(share < 1.0, growth, np.nan),
-        lag=np.where(share == 1.0, _lag(side, Rt, wake=False), np.nan),
+        growth=np.where(share < 1.0, _growth(side, Rt, chosen), np.nan),
+        lag=np.where(share > 0.0, _lag(side, Rt, wake=False, share=share), np.nan),
         turbulent=share,
     )
 
@@ -352,20 +219,39 @@ def _blend(share: Array, laminar: Array, turbulent: Array) -> Array:
     return np.asarray(np.where((share == 0.0) | (share == 1.0), only, mixed))
 
 
-def _lag(side: Side, Rt: Array, *, wake: bool) -> Array:
+def _growth(side: Side, Rt: Array, closures: Closures) -> Array:
+    H, theta = side.dstar / side.theta, side.theta
+    at_end = np.maximum(H[:-1], H[1:]) if closures.falling == "before" else H[1:]
+    rate = 0.5 * growth_rate(H[:-1], theta[:-1], Rt[:-1], closures)
+    rate = rate + 0.5 * growth_rate(at_end, theta[1:], Rt[1:], closures)
+    return np.asarray(np.diff(side.amplification) - np.diff(side.xi) * rate)
+
+
+def _lag(side: Side, Rt: Array, *, wake: bool, share: Array | None = None) -> Array:
+    """Begin where transition falls: there the logarithms of what is needed lie between."""
     H = side.dstar / side.theta
-    thickness = layer_thickness(H, side.theta, side.dstar) * (0.5 if wake else 1.0)
-    wanted = equilibrium_shear(H, Rt, wake=wake)
-    rate = LAG_CONSTANT / (2.0 * thickness) * (wanted - side.shear)
-    return np.asarray(np.diff(np.log(side.shear)) - np.diff(side.xi) * _mean(rate))
+    if share is None:
+        share = np.ones(len(H) - 1)
+    thickness = np.log(layer_thickness(H, side.theta, side.dstar) * (0.5 if wake else 1.0))
+    wanted = np.log(equilibrium_shear(H, Rt, wake=wake))
+    initial = 0.5 * np.log(INITIAL_SHEAR) + wanted[1:] - share * np.diff(wanted)
+    first = np.where(share < 1.0, initial, np.log(side.shear[:-1]))
+    rates = [
+        0.5 * LAG_CONSTANT * np.exp(-delta) * (np.exp(equilibrium) - np.exp(shear))
+        for delta, equilibrium, shear in (
+            (
+                thickness[1:] - share * np.diff(thickness),
+                wanted[1:] - share * np.diff(wanted),
+                first,
+            ),
+            (thickness[1:], wanted[1:], np.log(side.shear[1:])),
+        )
+    ]
+    run = share * np.diff(side.xi)
+    return np.asarray(np.log(side.shear[1:]) - first - run * 0.5 * (rates[0] + rates[1]))
 
 
 # Beginning and end
-
-
-def initial_shear(H: Array, Rt: Array) -> Array:
-    """Find S where the layer becomes turbulent."""
-    return np.asarray(np.sqrt(INITIAL_SHEAR) * equilibrium_shear(H, Rt))
 
 
 def stagnation_theta(xi: Array, ue: Array, *, reynolds: float) -> Array:

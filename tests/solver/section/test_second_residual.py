@@ -2,12 +2,16 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 import numpy as np
 import pytest
 from scipy.integrate import solve_ivp
 
+from tests.solver.section import second_closures as closures
 from tests.solver.section import second_residual as second
-from tests.solver.section.second_residual import PUBLISHED, Closures, Side
+from tests.solver.section.second_closures import PUBLISHED, Closures
+from tests.solver.section.second_residual import Side
 
 REYNOLDS = 3e5
 
@@ -15,7 +19,7 @@ REYNOLDS = 3e5
 def similar_layer(H: float, xi: np.ndarray) -> Side:
     """Laminar layer of constant H on the closures: speed and thickness are powers of xi."""
     at, one = np.array(H), np.array(1.0)
-    friction, loss = second.laminar_friction(at, one), second.laminar_dissipation(at, one)
+    friction, loss = closures.laminar_friction(at, one), closures.laminar_dissipation(at, one)
     excess = (loss - 0.5 * friction) / (1.0 - H)
     scale = friction - 2.0 * (1.5 + H) * excess  # Re ue theta^2 / xi
     ue = xi ** (excess / scale)
@@ -25,18 +29,18 @@ def similar_layer(H: float, xi: np.ndarray) -> Side:
 
 def turbulent_layer(cells: int, *, wake: bool) -> Side:
     """Turbulent layer in a rising pressure, from its ordinary differential equations."""
-    closures = Closures()
+    chosen = Closures()
 
     def slopes(xi: float, state: np.ndarray) -> list[float]:
         theta, H, shear = (np.array(one) for one in state)
         ue, change = 1.0 - 0.3 * xi, -0.3
         Rt = REYNOLDS * ue * theta
-        friction = 0.0 if wake else float(second.turbulent_friction(H, Rt))
-        loss = float(second.turbulent_dissipation(H, Rt, shear, closures, wake=wake))
+        friction = 0.0 if wake else float(closures.turbulent_friction(H, Rt))
+        loss = float(closures.turbulent_dissipation(H, Rt, shear, chosen, wake=wake))
 
         def energy(d_shape: float, d_log: float) -> float:
             factor = np.exp(d_log)
-            return float(second.turbulent_energy_shape(H + d_shape, Rt * factor))
+            return float(closures.turbulent_energy_shape(H + d_shape, Rt * factor))
 
         step = 1e-6
         by_shape = (energy(step, 0.0) - energy(-step, 0.0)) / (2.0 * step)
@@ -44,8 +48,8 @@ def turbulent_layer(cells: int, *, wake: bool) -> Side:
         thicker = 0.5 * friction - (2.0 + H) * theta / ue * change
         rise = energy(0.0, 0.0) * ((loss - 0.5 * friction) / theta - (1.0 - H) / ue * change)
         bent = (rise - by_log * (thicker / theta + change / ue)) / by_shape
-        delta = second.layer_thickness(H, theta, H * theta) * (0.5 if wake else 1.0)
-        wanted = second.equilibrium_shear(H, Rt, wake=wake)
+        delta = closures.layer_thickness(H, theta, H * theta) * (0.5 if wake else 1.0)
+        wanted = closures.equilibrium_shear(H, Rt, wake=wake)
         return [float(thicker), float(bent), float(shear * 2.1 / delta * (wanted - shear))]
 
     xi = np.linspace(0.3, 1.0, cells + 1)
@@ -72,7 +76,7 @@ def test_growth_is_the_integral_of_its_rate():
         side = similar_layer(2.7, np.linspace(0.3, 0.8, cells + 1))
         found = second.wall_residuals(side, reynolds=REYNOLDS, critical=9.0)
         # The rate goes as 1/theta, behind where growth is switched on.
-        rate = float(second.growth_rate(np.array(2.7), *_ends(side), PUBLISHED)[-1])
+        rate = float(closures.growth_rate(np.array(2.7), *_ends(side), PUBLISHED)[-1])
         power = np.log(side.theta[-1] / side.theta[0]) / np.log(0.8 / 0.3)
         whole = rate * 0.8 * (1.0 - (0.3 / 0.8) ** (1.0 - power)) / (1.0 - power)
         errors.append(-found.growth.sum() - whole)
@@ -111,33 +115,36 @@ def test_the_cell_with_transition_is_shared():
     forced = second.turbulent_share(side, critical=9.0, trip=0.16)
     assert forced == pytest.approx([0.4, 1.0, 1.0, 1.0])
     found = second.wall_residuals(side, reynolds=REYNOLDS, critical=9.0)
-    early = second.wall_residuals(side, reynolds=REYNOLDS, critical=1.0)
     late = second.wall_residuals(side, reynolds=REYNOLDS, critical=20.0)
+    H, Rt = np.full(5, 2.5), REYNOLDS * side.theta
+    initial = closures.initial_shear(H, Rt)
+    begun = replace(side, shear=np.where(np.arange(5) < 3, initial, side.shear))
+    early = second.wall_residuals(begun, reynolds=REYNOLDS, critical=1.0)
     for name in ("momentum", "shape"):
         mixed = 0.25 * getattr(late, name)[2] + 0.75 * getattr(early, name)[2]
         assert getattr(found, name)[2] == pytest.approx(mixed, rel=1e-12)
         assert getattr(late, name)[2] != pytest.approx(getattr(early, name)[2], rel=0.01)
-    assert np.isnan(found.lag).tolist() == [True, True, True, False]
+    assert np.isnan(found.lag).tolist() == [True, True, False, False]
     assert np.isnan(found.growth).tolist() == [False, False, False, True]
 
 
 def test_the_changes_to_the_closures_act_only_where_they_should():
     H, ones = np.array([2.4, 3.4, 4.0, 4.6]), np.ones(4)
     Rt = 2000.0 * ones
-    published = second.growth_rate(H, ones, Rt, PUBLISHED)
+    published = closures.growth_rate(H, ones, Rt, PUBLISHED)
     for ramp, middle in (("linear", 0.8), ("smooth", 0.8)):
-        slower = second.growth_rate(H, ones, Rt, Closures(ramp=ramp))
+        slower = closures.growth_rate(H, ones, Rt, Closures(ramp=ramp))
         assert slower / published == pytest.approx([1.0, 1.0, middle, 0.6])
     quarter = np.array([3.75])
     factors = [
-        second.growth_rate(quarter, ones[:1], Rt[:1], Closures(ramp=ramp))
-        / second.growth_rate(quarter, ones[:1], Rt[:1], PUBLISHED)
+        closures.growth_rate(quarter, ones[:1], Rt[:1], Closures(ramp=ramp))
+        / closures.growth_rate(quarter, ones[:1], Rt[:1], PUBLISHED)
         for ramp in ("linear", "smooth")
     ]
     assert np.ravel(factors) == pytest.approx([1.0 - 0.4 / 4.0, 1.0 - 0.4 * 5.0 / 32.0])
     for wake in (False, True):
         more, plain = (
-            second.turbulent_dissipation(H, Rt, 0.1 * ones, one, wake=wake)
+            closures.turbulent_dissipation(H, Rt, 0.1 * ones, one, wake=wake)
             for one in (Closures(), PUBLISHED)
         )
         assert more / plain == pytest.approx([1.0, 1.09, 1.15, 1.21])
