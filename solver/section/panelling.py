@@ -10,6 +10,7 @@ from scipy.interpolate import CubicSpline
 from scipy.optimize import brentq
 
 from solver.errors import InputError
+from solver.section.arc_spline import spline_by_length
 from solver.section.fairing import closed_points, fair_outline
 from solver.section.geometry import Outline, cosine_spacing
 from solver.section.outline_checks import PRINT_ROUNDING
@@ -17,8 +18,6 @@ from solver.section.outline_checks import PRINT_ROUNDING
 FloatArray = NDArray[np.float64]
 
 FEWEST_NODES, MOST_NODES = 81, 301
-LENGTH_ROUNDS = 4
-"""Of finding lengths along a curve through points; each gains two digits or more."""
 LEAST_WEDGE = 0.002
 """Thickness over distance from the trailing edge: 0.1 degrees, within the print of a cusp."""
 WEDGE_REACH = 0.05
@@ -88,7 +87,7 @@ def panel_nodes(outline: Outline, *, nodes: int = 141) -> PanelNodes:
     corners = outline.corners
     points = closed_points(outline if corners else fair_outline(outline).outline)
     pieces = [
-        _by_length(points[one : other + 1])
+        spline_by_length(points[one : other + 1])
         for one, other in zip((0, *corners), (*corners, len(points) - 1), strict=True)
     ]
     starts = np.concatenate([[0.0], np.cumsum([piece.x[-1] for piece in pieces])])
@@ -103,20 +102,6 @@ def panel_nodes(outline: Outline, *, nodes: int = 141) -> PanelNodes:
     laid[[0, -1]] = points[0]
     laid = _parted(laid)
     return PanelNodes(laid[:, 0].copy(), laid[:, 1].copy(), arc)
-
-
-def _by_length(points: FloatArray) -> CubicSpline:
-    """Lay a cubic spline through points, over length along itself (from 0)."""
-    at, weight = np.polynomial.legendre.leggauss(5)
-    along = np.concatenate([[0.0], np.cumsum(np.hypot(*np.diff(points, axis=0).T))])
-    for _ in range(LENGTH_ROUNDS):
-        curve = CubicSpline(along, points)
-        step = np.diff(along)
-        speed = np.hypot(
-            *np.moveaxis(curve(along[:-1, None] + 0.5 * step[:, None] * (at + 1.0), 1), -1, 0)
-        )
-        along = np.concatenate([[0.0], np.cumsum(0.5 * step * (speed @ weight))])
-    return CubicSpline(along, points)
 
 
 def _leading_edge(pieces: list[CubicSpline], starts: FloatArray) -> float:
