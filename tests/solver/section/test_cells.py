@@ -7,31 +7,16 @@ from dataclasses import dataclass, replace
 import numpy as np
 import pytest
 
-from solver.section.boundary_layer import closures as kernels
 from solver.section.boundary_layer.cells import LAMINAR, TURBULENT, WAKE, cell, transition_cell
 from solver.section.boundary_layer.newton import scratch
-from tests.solver.section import second_closures, second_residual
-from tests.solver.section.second_closures import Closures
+from tests.solver.section import second_residual
+from tests.solver.section.kernel_constants import CHOSEN, constants
 from tests.solver.section.second_residual import Side
 
-CHOSEN = Closures(ramp="smooth", falling="before")
 CRITICAL = 9.0
 TRANSITION = -1
 NOWHERE = 1e9
 """Where a trip is that does nothing."""
-
-
-def constants() -> np.ndarray:
-    """The same constants for the kernels."""
-    values = np.zeros(16)
-    values[kernels.SEPARATED_GROWTH] = CHOSEN.separated_growth
-    values[kernels.GROWTH_FROM_H], values[kernels.GROWTH_TO_H] = 3.5, 4.5
-    values[kernels.DISSIPATION_RISE] = CHOSEN.extra_dissipation
-    values[kernels.DISSIPATION_FROM_H] = 2.5
-    values[kernels.INITIAL_STRESS] = second_closures.INITIAL_SHEAR
-    values[kernels.LAG] = second_residual.LAG_CONSTANT
-    values[kernels.EQUILIBRIUM] = 0.015
-    return values
 
 
 @dataclass
