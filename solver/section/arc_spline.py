@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from dataclasses import dataclass
+
 import numpy as np
 from numpy.typing import NDArray
 from scipy.interpolate import CubicSpline
@@ -34,3 +36,47 @@ def spline_by_length(points: FloatArray) -> CubicSpline:
         speed = np.sqrt(np.square(curve(place, 1)).sum(axis=-1))
         along = np.concatenate([[0.0], np.cumsum(0.5 * step * (speed @ weight))])
     return CubicSpline(along, points)
+
+
+@dataclass(frozen=True, eq=False)
+class BrokenCurve:
+    """A curve over length along itself, smooth from corner to corner.
+
+    Parameters
+    ----------
+    pieces : tuple of scipy.interpolate.CubicSpline
+        Each over its own length, from 0.
+    starts : numpy.ndarray, shape (pieces + 1,)
+        Length at which each begins, and the whole length.
+    """
+
+    pieces: tuple[CubicSpline, ...]
+    starts: FloatArray
+
+    def __call__(self, along: FloatArray) -> FloatArray:
+        """Points, shape (n, 2), at lengths `along`, shape (n,)."""
+        found = np.empty((len(along), 2))
+        for piece, start, end in zip(self.pieces, self.starts[:-1], self.starts[1:], strict=True):
+            here = (along >= start) & (along <= end)
+            found[here] = piece(along[here] - start)
+        return found
+
+
+def broken_curve(points: FloatArray, *, corners: tuple[int, ...]) -> BrokenCurve:
+    """Lay smooth curves through points, broken at some of them.
+
+    Parameters
+    ----------
+    points : numpy.ndarray, shape (n, 2)
+        In order.
+    corners : tuple of int
+        Points at which one curve ends and the next begins, ascending, neither end among them.
+
+    Returns
+    -------
+    BrokenCurve
+        Through all points.
+    """
+    ends = zip((0, *corners), (*corners, len(points) - 1), strict=True)
+    pieces = tuple(spline_by_length(points[one : other + 1]) for one, other in ends)
+    return BrokenCurve(pieces, np.cumsum([0.0, *(piece.x[-1] for piece in pieces)]))

@@ -101,6 +101,7 @@ def deflect_flap(
     last = len(over) - 1
     corners = [last - k for k in reversed(over_corners)] + [last + k for k in under_corners]
     whole = np.concatenate([over[::-1], under[1:]])
+    whole[-1] = whole[0]
     return replace(
         fair,
         name=f"{outline.name}, {_words(hinge, deflection, hinge_height)}",

@@ -6,11 +6,10 @@ from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
-from scipy.interpolate import CubicSpline
 from scipy.optimize import brentq
 
 from solver.errors import InputError
-from solver.section.arc_spline import spline_by_length
+from solver.section.arc_spline import BrokenCurve, broken_curve
 from solver.section.fairing import closed_points, fair_outline
 from solver.section.geometry import Outline, cosine_spacing
 from solver.section.outline_checks import PRINT_ROUNDING
@@ -22,7 +21,9 @@ LEAST_WEDGE = 0.002
 """Thickness over distance from the trailing edge: 0.1 degrees, within the print of a cusp."""
 WEDGE_REACH = 0.05
 """Of that wedge, over chord: ahead of it the thickness may be as small as at its end."""
-MOST_UNEVEN = 2.0
+FARTHEST_EDGE = 0.1
+"""Of the leading edge behind the foremost point, over chord."""
+MOST_UNEVEN = 1.5
 """Of the two surfaces' lengths, and so of the panels that meet at the leading edge."""
 
 
@@ -69,7 +70,8 @@ def panel_nodes(outline: Outline, *, nodes: int = 141) -> PanelNodes:
     InputError
         Named ``nodes``, if they are even in number or out of range; named
         ``coordinates``, saying where, if the outline leaves no room between its
-        surfaces or one of them is more than twice as long as the other.
+        surfaces or one of them is more than half as long again as the other, or the
+        leading edge lies more than 10 % of chord behind the foremost point.
 
     Notes
     -----
@@ -84,32 +86,24 @@ def panel_nodes(outline: Outline, *, nodes: int = 141) -> PanelNodes:
     """
     if nodes % 2 == 0 or not FEWEST_NODES <= nodes <= MOST_NODES:
         raise InputError("nodes", nodes, f"odd and between {FEWEST_NODES} and {MOST_NODES}")
-    corners = outline.corners
-    points = closed_points(outline if corners else fair_outline(outline).outline)
-    pieces = [
-        spline_by_length(points[one : other + 1])
-        for one, other in zip((0, *corners), (*corners, len(points) - 1), strict=True)
-    ]
-    starts = np.concatenate([[0.0], np.cumsum([piece.x[-1] for piece in pieces])])
-    nose = _leading_edge(pieces, starts)
+    points = closed_points(outline if outline.corners else fair_outline(outline).outline)
+    curve = broken_curve(points, corners=outline.corners)
+    nose, whole = _leading_edge(curve), float(curve.starts[-1])
     share = cosine_spacing(nodes // 2 + 1)
-    _check_evenness(nose, starts[-1])
-    arc = np.concatenate([nose * share, nose + (starts[-1] - nose) * share[1:]])
-    laid = np.empty((nodes, 2))
-    for piece, start, end in zip(pieces, starts[:-1], starts[1:], strict=True):
-        here = (arc >= start) & (arc <= end)
-        laid[here] = piece(arc[here] - start)
+    arc = np.concatenate([nose * share, nose + (whole - nose) * share[1:]])
+    laid = curve(arc)
     laid[[0, -1]] = points[0]
+    _check_leading_edge(laid[nodes // 2], float(points[:, 0].min()), nose / (whole - nose))
     laid = _parted(laid)
     return PanelNodes(laid[:, 0].copy(), laid[:, 1].copy(), arc)
 
 
-def _leading_edge(pieces: list[CubicSpline], starts: FloatArray) -> float:
+def _leading_edge(curve: BrokenCurve) -> float:
     """Length along the outline to the place farthest from the trailing edge."""
-    edge = pieces[0](0.0)
-    reach = [float(np.hypot(*(piece(piece.x) - edge).T).max()) for piece in pieces]
+    edge = curve.pieces[0](0.0)
+    reach = [float(np.hypot(*(piece(piece.x) - edge).T).max()) for piece in curve.pieces]
     at = int(np.argmax(reach))
-    piece = pieces[at]
+    piece = curve.pieces[at]
     near = int(np.argmax(np.hypot(*(piece(piece.x) - edge).T)))
 
     def turning(along: float) -> float:
@@ -122,16 +116,22 @@ def _leading_edge(pieces: list[CubicSpline], starts: FloatArray) -> float:
             f"a leading edge at a corner, x = {100 * piece(low)[0]:.1f} % of chord",
             "of a section with a round nose",
         )
-    return float(starts[at]) + float(brentq(turning, low, high, xtol=1e-14))
+    return float(curve.starts[at]) + float(brentq(turning, low, high, xtol=1e-14))
 
 
-def _check_evenness(upper: float, whole: float) -> None:
-    ratio = upper / (whole - upper)
+def _check_leading_edge(edge: FloatArray, foremost: float, ratio: float) -> None:
+    """Refuse one far from the foremost point, or with surfaces of unlike length."""
+    if edge[0] - foremost > FARTHEST_EDGE:
+        raise InputError(
+            "coordinates",
+            f"an outline farthest from its trailing edge at x = {100 * edge[0]:.1f} % of chord",
+            "of a section that is farthest from its trailing edge at the nose",
+        )
     if not 1.0 / MOST_UNEVEN <= ratio <= MOST_UNEVEN:
         raise InputError(
             "coordinates",
             f"an upper surface {ratio:.2f} times as long as the lower one",
-            "of a section whose surfaces are of like length (within a factor of two)",
+            "of a section neither of whose surfaces is half as long again as the other",
         )
 
 
