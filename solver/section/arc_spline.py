@@ -56,9 +56,9 @@ class BrokenCurve:
     def __call__(self, along: FloatArray) -> FloatArray:
         """Points, shape (n, 2), at lengths `along`, shape (n,)."""
         found = np.empty((len(along), 2))
-        for piece, start, end in zip(self.pieces, self.starts[:-1], self.starts[1:], strict=True):
-            here = (along >= start) & (along <= end)
-            found[here] = piece(along[here] - start)
+        at = np.searchsorted(self.starts[1:-1], along, side="right")
+        for k, piece in enumerate(self.pieces):
+            found[at == k] = piece(along[at == k] - self.starts[k])
         return found
 
 

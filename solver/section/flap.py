@@ -160,7 +160,7 @@ def _opened(surface: CubicSpline, turn: _Turn) -> tuple[FloatArray, list[int]]:
     foot = _foot(surface, turn.hinge)
     start = surface(foot)
     if np.hypot(*(start - turn.hinge)) * abs(turn.angle) < SHORTEST_ARC:
-        arc = turn.hinge[None]
+        arc = turn(start, 0.5)[None]
     else:
         steps = max(FEWEST_ARC_STEPS, int(np.ceil(abs(turn.angle) / ARC_STEP)))
         arc = np.array([turn(start, share) for share in np.linspace(0.0, 1.0, steps + 1)])
