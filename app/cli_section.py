@@ -9,7 +9,7 @@ import re
 import signal
 import sys
 import threading
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
 from contextlib import contextmanager, suppress
 from pathlib import Path
 from typing import TYPE_CHECKING, TypeAlias
@@ -160,6 +160,25 @@ def _outline(text: str) -> tuple[Outline, str]:
     return outline, f"{table.name}, {len(outline.x)} points of {Path(text).name}"
 
 
+def _deflected(outline: Outline, flap: Sequence[float] | None) -> Outline:
+    if flap is None:
+        return outline
+    from solver.section.flap import (
+        FOREMOST_HINGE,
+        LARGEST_DEFLECTION,
+        REARMOST_HINGE,
+        deflect_flap,
+    )
+
+    (hinge, degrees), most = flap, math.degrees(LARGEST_DEFLECTION)
+    if not (FOREMOST_HINGE <= hinge <= REARMOST_HINGE and abs(degrees) <= most):
+        raise UnusableError(
+            f"--flap must be a hinge from {FOREMOST_HINGE:g} to {REARMOST_HINGE:g} of chord and a "
+            f"deflection from {-most:g} to {most:g} degrees; got {hinge:g} {degrees:g}"
+        )
+    return deflect_flap(outline, hinge=hinge, deflection=math.radians(degrees))
+
+
 def _where(error: InputError, table: OutlineTable) -> str:
     """Say on which lines of the file the points of a refusal stand."""
     numbers = dict.fromkeys(int(one) for one in re.findall(r"\bpoint (\d+)", str(error)))
@@ -221,6 +240,7 @@ def _computed(
     reynolds: FloatArray,
     stopped: threading.Event,
 ) -> tuple[SectionFlow, MadeBy]:
+    shape = _deflected(outline, arguments.flap)
     kernels = prepare_kernel_cache()
     if not kernels.warm:
         _say("Preparing the solver's kernels (once on this machine) ...")
@@ -233,15 +253,10 @@ def _computed(
         outline=origin,
         digest=outline_digest(outline),
         turbulence=turbulence,
-        flap=None if arguments.flap is None else (arguments.flap[0], arguments.flap[1]),
+        flap=arguments.flap,
     )
-    if arguments.flap is not None:
-        from solver.section.flap import deflect_flap
-
-        hinge, degrees = arguments.flap
-        outline = deflect_flap(outline, hinge=hinge, deflection=math.radians(degrees))
     flow = section_flow(
-        outline,
+        shape,
         angle=angle,
         reynolds=reynolds,
         settings=settings,

@@ -51,7 +51,7 @@ def add_section_options(parser: argparse.ArgumentParser) -> None:
         metavar=("HINGE", "DEGREES"),
         nargs=2,
         type=_number(-90.0, 90.0),
-        help="plain flap: its hinge as a share of chord, its deflection, down positive",
+        help="plain flap: its hinge at 0.5 to 0.95 of chord, its deflection, down positive",
     )
     parser.add_argument(
         "--threads",

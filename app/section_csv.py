@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import hashlib
+from collections.abc import Sequence
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
@@ -42,7 +43,7 @@ class MadeBy:
         Of its coordinates, see `outline_digest`.
     turbulence : float
         Turbulence level that goes with the critical amplification factor [-].
-    flap : (float, float) or None
+    flap : sequence of float, or None
         Hinge as a share of chord, deflection in degrees, down positive.
     """
 
@@ -51,7 +52,7 @@ class MadeBy:
     outline: str
     digest: str
     turbulence: float
-    flap: tuple[float, float] | None
+    flap: Sequence[float] | None
 
 
 def outline_digest(outline: Outline) -> str:

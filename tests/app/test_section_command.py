@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 import os
 import re
 import signal
@@ -18,6 +19,7 @@ from app.tables import read_drag_table, read_lift_table, table_source
 from app.version import version
 from scenarios import FOLDER
 from solver.errors import InputError
+from solver.section.flap import deflect_flap
 from solver.section.geometry import naca_outline
 from tests.app.sample_flow import PointStatus, SampleSolver
 
@@ -262,6 +264,8 @@ def test_an_existing_file_is_replaced_in_one_step(solver, tmp_path, monkeypatch,
         (["2412", *USUAL, "--output", "."], ". is a folder; give the name of a file"),
         (["2412", *USUAL, "--output", ""], "--output is not a usable file name"),
         (["own.csv", *USUAL, "--output", "./own.csv"], "is the outline itself"),
+        (["2412", *USUAL, "--flap", "0.4", "5"], "0.5 to 0.95 of chord and a deflection from -40"),
+        (["2412", *USUAL, "--flap", "0.7", "41"], "to 40 degrees; got 0.7 41"),
         (["2412", *USUAL[:3], "--angles", "5", "4", "1"], "ascending by a step > 0; got 5 4 1"),
         (["2412", *USUAL[:3], "--angles", "0", "4", "0"], "ascending by a step > 0; got 0 4 0"),
         (["2412", *USUAL[:3], "--angles", "-20", "20", "0.1"], "makes 401 angles; at most 400"),
@@ -335,19 +339,10 @@ def test_a_refusal_of_the_solver_names_the_option(name, said, solver, capsys):
     assert capsys.readouterr().err == f"{said}\n"
 
 
-def test_a_flap_is_deflected_in_radians_and_said(solver, monkeypatch, capsys):
-    asked = []
-
-    def deflect_flap(outline, *, hinge, deflection):
-        asked.append((outline.name, hinge, deflection))
-        return naca_outline("4412")
-
-    monkeypatch.setitem(
-        sys.modules, "solver.section.flap", SimpleNamespace(deflect_flap=deflect_flap)
-    )
+def test_a_flap_is_deflected_in_radians_and_said(solver, capsys):
     assert cli.main(["section", "2412", *USUAL, "--flap", "0.75", "-10"]) == cli.DONE
-    assert asked == [("NACA 2412", 0.75, pytest.approx(np.radians(-10.0), abs=1e-15))]
-    assert solver.asked[0].outline.name == "NACA 4412"
+    expected = deflect_flap(naca_outline("2412"), hinge=0.75, deflection=math.radians(-10.0))
+    assert np.array_equal(solver.asked[0].outline.y, expected.y)
     text = capsys.readouterr().out
     assert "# flap: hinge at 0.75 chord, -10 deg, down positive\n" in text
     assert "# outline: NACA 2412," in text
