@@ -1,0 +1,1 @@
+"""The boundary layer and wake of a section, solved together with the potential flow."""

@@ -1,0 +1,355 @@
+"""One point of a polar, and what all points of one section share."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from functools import cached_property
+
+import numpy as np
+from numpy.typing import NDArray
+
+from solver.section.boundary_layer.constants import ClosureConstants
+from solver.section.boundary_layer.forces import coefficients, wall_curvature, wall_pressures
+from solver.section.boundary_layer.newton import scratch, speeds
+from solver.section.boundary_layer.readings import half_friction, stations
+from solver.section.boundary_layer.solve import solve_point, wake_angles
+from solver.section.boundary_layer.start import start
+from solver.section.panelling import PanelNodes
+from solver.section.potential_flow import Influence, Wake, influence, straight_wake
+
+FloatArray = NDArray[np.float64]
+IntArray = NDArray[np.int64]
+BoolArray = NDArray[np.bool_]
+
+CONVERGED, MOVING, BROKEN = 0, 1, 2
+"""How an iteration ended: at rest, without coming to rest, or in numbers that are none."""
+
+NEVER = 9.0
+"""Distance of a trip that is not there, over chord."""
+TRIP_ROUNDS, TRIP_TOLERANCE = 5, 1e-6
+"""A trip is so far from the stagnation point, which is known after an iteration only."""
+
+WAKE_PASSES, WAKE_ANGLE, WAKE_REYNOLDS, WAKE_CRITICAL = 2, np.radians(4.0), 3e6, 9.0
+"""Where the wake's path is followed, once for all points of a section."""
+
+
+@dataclass(frozen=True, eq=False)
+class SectionPanels:
+    """A section laid out in panels, with the potential flow about it.
+
+    Parameters
+    ----------
+    nodes : PanelNodes
+        Of the body.
+    influence : Influence
+        Of body and wake.
+    """
+
+    nodes: PanelNodes
+    influence: Influence
+
+    @cached_property
+    def count(self) -> int:
+        """Nodes of the body."""
+        return len(self.nodes.x)
+
+    @cached_property
+    def total(self) -> int:
+        """Nodes of body and wake."""
+        return len(self.influence.along)
+
+    @cached_property
+    def curvature(self) -> FloatArray:
+        """Of the wall at the nodes."""
+        return wall_curvature(self.nodes)
+
+    @cached_property
+    def path_angle(self) -> FloatArray:
+        """Direction of each wake panel [rad]."""
+        wake = self.influence.wake
+        return np.asarray(np.arctan2(np.diff(wake.y), np.diff(wake.x)), dtype=np.float64)
+
+
+@dataclass(frozen=True, eq=False)
+class Conditions:
+    """What all points of a section are solved under.
+
+    Parameters
+    ----------
+    critical : float
+        Amplification factor at which the flow turns turbulent. [-]
+    trip_upper, trip_lower : float or None
+        Place of forced transition, arc length from the first node. [-]
+    constants : ClosureConstants
+    """
+
+    critical: float
+    trip_upper: float | None
+    trip_lower: float | None
+    constants: ClosureConstants
+
+    @cached_property
+    def array(self) -> FloatArray:
+        """The constants as the kernels take them."""
+        return self.constants.as_array()
+
+    @property
+    def tripped(self) -> bool:
+        """Whether transition is forced anywhere."""
+        return self.trip_upper is not None or self.trip_lower is not None
+
+    def trips(self, stagnation: float) -> FloatArray:
+        """Distances of the trips along both sides from a stagnation point."""
+        upper, lower = self.trip_upper, self.trip_lower
+        return np.array(
+            [
+                NEVER if upper is None else stagnation - upper,
+                NEVER if lower is None else lower - stagnation,
+            ]
+        )
+
+
+@dataclass(eq=False)
+class LayerState:
+    """The layers of a point while it is iterated; the kernels write into its arrays.
+
+    Parameters
+    ----------
+    stations : numpy.ndarray, shape (n + w, 4)
+        (ln theta, ln dstar, ln ue, ln S) of body and wake.
+    amplification : numpy.ndarray, shape (n,)
+    turbulent_from : numpy.ndarray of int, shape (2,)
+    place : numpy.ndarray, shape (2,)
+        Node before the stagnation point, and its arc length.
+    sheet : numpy.ndarray, shape (w + 1,)
+    share : numpy.ndarray, shape (2,)
+        Turbulent share of the cells with transition.
+    laminar : numpy.ndarray of bool, shape (n + w,)
+    """
+
+    stations: FloatArray
+    amplification: FloatArray
+    turbulent_from: IntArray
+    place: FloatArray
+    sheet: FloatArray
+    share: FloatArray
+    laminar: BoolArray
+
+    def copy(self) -> LayerState:
+        """Return the same state in arrays of its own."""
+        return LayerState(
+            self.stations.copy(),
+            self.amplification.copy(),
+            self.turbulent_from.copy(),
+            self.place.copy(),
+            self.sheet.copy(),
+            self.share.copy(),
+            self.laminar.copy(),
+        )
+
+
+@dataclass(frozen=True)
+class Outcome:
+    """How an iteration went.
+
+    Fields
+    ------
+    ended : int
+        `CONVERGED`, `MOVING` or `BROKEN`.
+    iterations : int
+        How many.
+    change : float
+        Largest change of ln theta, ln dstar, ln ue in the last one. [-]
+    """
+
+    ended: int
+    iterations: int
+    change: float
+
+
+def cold_start(
+    panels: SectionPanels, conditions: Conditions, *, angle: float, reynolds: float
+) -> LayerState:
+    """March the layers under the speeds of the potential flow without them.
+
+    Parameters
+    ----------
+    panels : SectionPanels
+    conditions : Conditions
+    angle : float
+        Of attack. [rad]
+    reynolds : float
+        [-]
+
+    Returns
+    -------
+    LayerState
+    """
+    count, total = panels.count, panels.total
+    state = LayerState(
+        stations=np.zeros((total, 4)),
+        amplification=np.zeros(count),
+        turbulent_from=np.full(2, -1),
+        place=np.zeros(2),
+        sheet=np.zeros(total - count + 1),
+        share=np.zeros(2),
+        laminar=np.zeros(total, dtype=np.bool_),
+    )
+    flow = panels.influence
+    speed = flow.along * np.cos(angle) + flow.across * np.sin(angle)
+    # The kernel finds the stagnation point itself; a trip needs a first idea of it.
+    turns = np.flatnonzero((speed[: count - 1] < 0.0) & (speed[1:count] >= 0.0))
+    trips = conditions.trips(panels.nodes.arc[turns[0] if turns.size else count // 2])
+    state.place[:] = start(
+        speed, panels.nodes.arc, flow.wake.distance, count, reynolds, conditions.critical, trips,
+        conditions.array, state.stations, state.amplification, state.turbulent_from, scratch(),
+    )  # fmt: skip
+    return state
+
+
+def iterate(
+    panels: SectionPanels,
+    conditions: Conditions,
+    state: LayerState,
+    *,
+    angle: float,
+    reynolds: float,
+    iterations: int,
+) -> Outcome:
+    """Bring a state to rest at one angle and Reynolds number.
+
+    Parameters
+    ----------
+    panels : SectionPanels
+    conditions : Conditions
+    state : LayerState
+        To begin with; changed in place.
+    angle : float
+        Of attack. [rad]
+    reynolds : float
+        [-]
+    iterations : int
+        At most so many; with a trip so many for each idea of where it is.
+
+    Returns
+    -------
+    Outcome
+    """
+    flow, count = panels.influence, panels.count
+    cosine, sine = np.cos(angle), np.sin(angle)
+    base = flow.along * cosine + flow.across * sine
+    normal = flow.normal_along * cosine + flow.normal_across * sine
+    history = np.zeros((iterations, 5))
+    used = 0
+    for _ in range(TRIP_ROUNDS):
+        from_place = state.place[1]
+        ended, rounds, change = solve_point(
+            base, flow.defect, flow.sheet, normal, flow.normal_defect, flow.normal_sheet,
+            panels.path_angle, panels.nodes.arc, flow.wake.distance, count, reynolds,
+            conditions.critical, conditions.trips(from_place), conditions.array,
+            state.stations, state.amplification, state.turbulent_from, state.place, state.sheet,
+            state.share, state.laminar, history, iterations,
+        )  # fmt: skip
+        used += rounds
+        settled = not conditions.tripped or abs(state.place[1] - from_place) < TRIP_TOLERANCE
+        if settled or ended != CONVERGED:
+            break
+    return Outcome(int(ended), used, float(change))
+
+
+READINGS = (
+    "lift",
+    "drag",
+    "moment",
+    "transition_upper",
+    "separation_upper",
+    "reattachment_upper",
+    "transition_lower",
+    "separation_lower",
+    "reattachment_lower",
+)
+"""What :func:`read` returns, in its order."""
+
+
+def read(
+    panels: SectionPanels,
+    conditions: Conditions,
+    state: LayerState,
+    *,
+    angle: float,
+    reynolds: float,
+) -> FloatArray:
+    """Read forces and places off a state.
+
+    Parameters
+    ----------
+    panels : SectionPanels
+    conditions : Conditions
+    state : LayerState
+    angle : float
+        Of attack. [rad]
+    reynolds : float
+        [-]
+
+    Returns
+    -------
+    numpy.ndarray, shape (len(READINGS),)
+        [-]
+    """
+    nodes, share = panels.nodes, conditions.constants.wall_curvature
+    pressure = wall_pressures(state.stations, panels.curvature, share)
+    friction = half_friction(state.stations, state.laminar, panels.count, reynolds)
+    places = stations(nodes.x, friction, int(state.place[0]), state.turbulent_from, state.share)
+    forces = coefficients(nodes.x, nodes.y, pressure, state.stations[-1], angle)
+    return np.concatenate([forces, places.ravel()])
+
+
+def prepared(nodes: PanelNodes, constants: ClosureConstants) -> SectionPanels:
+    """Lay the wake of a section along the flow, and solve the potential flow about both.
+
+    Parameters
+    ----------
+    nodes : PanelNodes
+        Of the body.
+    constants : ClosureConstants
+
+    Returns
+    -------
+    SectionPanels
+        With one wake for all points, that at 4 degrees and a Reynolds number of 3e6,
+        or a straight one where that point is not found.
+    """
+    panels = SectionPanels(nodes, influence(nodes, straight_wake(nodes)))
+    conditions = Conditions(WAKE_CRITICAL, None, None, constants)
+    state = None
+    for _ in range(WAKE_PASSES):
+        if state is None:
+            state = cold_start(panels, conditions, angle=WAKE_ANGLE, reynolds=WAKE_REYNOLDS)
+        outcome = iterate(
+            panels, conditions, state, angle=WAKE_ANGLE, reynolds=WAKE_REYNOLDS, iterations=60
+        )
+        if outcome.ended == BROKEN:
+            break
+        panels = SectionPanels(nodes, influence(nodes, _followed(panels, state)))
+    return panels
+
+
+def _followed(panels: SectionPanels, state: LayerState) -> Wake:
+    """Path of the flow behind the section in a state at the wake's angle."""
+    flow, count = panels.influence, panels.count
+    cosine, sine = np.cos(WAKE_ANGLE), np.sin(WAKE_ANGLE)
+    base = flow.along * cosine + flow.across * sine
+    normal = flow.normal_along * cosine + flow.normal_across * sine
+    speed, direction = np.empty(panels.total), np.empty(panels.total - count)
+    stagnation = int(state.place[0])
+    speeds(base, flow.defect, flow.sheet, state.sheet, state.stations, stagnation, count, speed)
+    wake_angles(
+        normal, flow.normal_defect, flow.normal_sheet, state.sheet, state.stations, stagnation,
+        count, speed, panels.path_angle, direction,
+    )  # fmt: skip
+    step = np.diff(flow.wake.distance)
+    return Wake(
+        flow.wake.x[0] + np.append(0.0, np.cumsum(step * np.cos(direction))),
+        flow.wake.y[0] + np.append(0.0, np.cumsum(step * np.sin(direction))),
+        flow.wake.distance,
+    )
