@@ -12,11 +12,12 @@ import threading
 from collections.abc import Iterator, Sequence
 from contextlib import contextmanager, suppress
 from pathlib import Path
-from typing import TYPE_CHECKING, TypeAlias
+from typing import TypeAlias
 
 import numpy as np
 from numpy.typing import NDArray
 
+from app.cli_section_options import MOST_THREADS
 from app.cli_status import DONE, FAILS, UnusableError
 from app.kernel_cache import prepare_kernel_cache
 from app.outline_table import OutlineTable, read_outline
@@ -25,11 +26,22 @@ from app.section_csv import MadeBy, outline_digest, section_csv, trimmed
 from app.table_text import TableError
 from app.version import version
 from solver.errors import InputError
+from solver.section import flow as section_solver
+from solver.section.flap import (
+    FOREMOST_HINGE,
+    LARGEST_DEFLECTION,
+    REARMOST_HINGE,
+    deflect_flap,
+)
+from solver.section.flow import (
+    FlowCancelledError,
+    FlowColumn,
+    FlowSettings,
+    SectionFlow,
+    critical_amplification,
+)
 from solver.section.geometry import Outline, naca_outline, outline_from_coordinates
 from solver.section.naca import naca_digits
-
-if TYPE_CHECKING:
-    from solver.section.flow import FlowColumn, FlowSettings, SectionFlow
 
 FloatArray: TypeAlias = NDArray[np.float64]
 
@@ -80,15 +92,13 @@ def compute_polar(arguments: argparse.Namespace) -> int:
             )
     except InputError as error:
         raise _refusal(error, arguments.outline) from error
-    except KeyboardInterrupt:
+    except (KeyboardInterrupt, FlowCancelledError):
         _say("halfspan: stopped; nothing was written")
-        raise
+        raise KeyboardInterrupt from None
     if not np.isfinite(flow.lift).any():
         _say("halfspan: not one point was found; nothing was written")
         return FAILS
     _write(output, section_csv(flow, made_by))
-    for sentence in _largest_lifts(flow):
-        _say(sentence)
     return DONE
 
 
@@ -163,13 +173,6 @@ def _outline(text: str) -> tuple[Outline, str]:
 def _deflected(outline: Outline, flap: Sequence[float] | None) -> Outline:
     if flap is None:
         return outline
-    from solver.section.flap import (
-        FOREMOST_HINGE,
-        LARGEST_DEFLECTION,
-        REARMOST_HINGE,
-        deflect_flap,
-    )
-
     (hinge, degrees), most = flap, math.degrees(LARGEST_DEFLECTION)
     if not (FOREMOST_HINGE <= hinge <= REARMOST_HINGE and abs(degrees) <= most):
         raise UnusableError(
@@ -197,8 +200,6 @@ def _refusal(error: InputError, outline: str) -> UnusableError:
 
 def _settings(arguments: argparse.Namespace) -> tuple[FlowSettings, float]:
     """Settings of the solver, and the turbulence level that goes with them [-]."""
-    from solver.section.flow import FlowSettings, critical_amplification
-
     factor = arguments.critical_factor
     if arguments.turbulence is not None:
         factor = critical_amplification(arguments.turbulence / 100.0)
@@ -244,8 +245,6 @@ def _computed(
     kernels = prepare_kernel_cache()
     if not kernels.warm:
         _say("Preparing the solver's kernels (once on this machine) ...")
-    from solver.section.flow import section_flow
-
     settings, turbulence = _settings(arguments)
     made_by = MadeBy(
         version=version(),
@@ -255,13 +254,13 @@ def _computed(
         turbulence=turbulence,
         flap=arguments.flap,
     )
-    flow = section_flow(
+    flow = section_solver.section_flow(
         shape,
         angle=angle,
         reynolds=reynolds,
         settings=settings,
-        threads=arguments.threads or usable_cores(),
-        on_column=lambda column: _say(_progress(column, angle)),
+        threads=arguments.threads or min(usable_cores(), MOST_THREADS),
+        on_column=lambda column: _say(_progress(column)),
         cancelled=stopped.is_set,
     )
     if np.isfinite(flow.lift).any():
@@ -276,13 +275,17 @@ def usable_cores() -> int:
     return os.cpu_count() or 1
 
 
-def _progress(column: FlowColumn, angle: FloatArray) -> str:
-    """How a Reynolds number went: how many points there are, and where there is none."""
+def _progress(column: FlowColumn) -> str:
+    """How a Reynolds number went: how many points there are, where none is, the largest lift."""
     found = np.isfinite(column.lift)
+    degrees = np.degrees(column.angle)
     sentence = f"Re {column.reynolds:,.0f}: {np.count_nonzero(found)} of {found.size} points"
-    if found.all():
-        return sentence
-    return f"{sentence}; none at {_stretches(np.degrees(angle), ~found)} deg"
+    if not found.all():
+        sentence += f" (none at {_stretches(degrees, ~found)} deg)"
+    if not np.isfinite(column.largest_lift):
+        return f"{sentence}, largest lift not bracketed"
+    at = int(np.nanargmin(np.abs(column.lift - column.largest_lift)))
+    return f"{sentence}, largest lift {column.largest_lift:.2f} at {degrees[at]:.1f} deg"
 
 
 def _stretches(values: FloatArray, chosen: NDArray[np.bool_]) -> str:
@@ -293,16 +296,6 @@ def _stretches(values: FloatArray, chosen: NDArray[np.bool_]) -> str:
         ends = (trimmed(values[first]), trimmed(values[last]))
         parts.append(ends[0] if first == last else f"{ends[0]} to {ends[1]}")
     return ", ".join(parts)
-
-
-def _largest_lifts(flow: SectionFlow) -> Iterator[str]:
-    for j, (reynolds, largest) in enumerate(zip(flow.reynolds, flow.largest_lift, strict=True)):
-        start = f"Re {reynolds:,.0f}: largest lift"
-        if not np.isfinite(largest):
-            yield f"{start} not bracketed"
-            continue
-        at = int(np.nanargmin(np.abs(flow.lift[:, j] - largest)))
-        yield f"{start} {largest:.2f} at {np.degrees(flow.angle[at]):.1f} deg"
 
 
 def _write(output: Path | None, text: str) -> None:

@@ -9,8 +9,8 @@ from collections.abc import Callable
 REYNOLDS = (1e4, 1e7)
 TURBULENCE = (0.02, 2.98)
 """Where Mack's relation is used [%]: amplification factors of 12 down to 0."""
-CRITICAL_FACTOR = (0.0, 15.0)
-MOST_THREADS = 256
+CRITICAL_FACTOR = (0.0, 20.0)
+MOST_THREADS = 64
 
 
 def add_section_options(parser: argparse.ArgumentParser) -> None:
@@ -73,7 +73,7 @@ def _add_transition_options(parser: argparse.ArgumentParser) -> None:
         "--critical-factor",
         metavar="N",
         type=_number(*CRITICAL_FACTOR),
-        help="the amplification factor at which the flow turns turbulent instead, 9 unless given",
+        help="instead: amplification factor where the flow turns, 0 to 20; 9 unless given",
     )
     for side in ("upper", "lower"):
         parser.add_argument(

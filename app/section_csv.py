@@ -5,14 +5,11 @@ from __future__ import annotations
 import hashlib
 from collections.abc import Sequence
 from dataclasses import dataclass
-from typing import TYPE_CHECKING
 
 import numpy as np
 
+from solver.section.flow import PointStatus, SectionFlow
 from solver.section.geometry import Outline
-
-if TYPE_CHECKING:
-    from solver.section.flow import SectionFlow
 
 COLUMNS = (
     "reynolds",
@@ -106,8 +103,6 @@ def section_csv(flow: SectionFlow, made_by: MadeBy) -> str:
 
 def status_words() -> dict[int, str]:
     """Words for how a point ended, by its number."""
-    from solver.section.flow import PointStatus
-
     return {int(one): one.name.lower().replace("_", " ") for one in PointStatus}
 
 

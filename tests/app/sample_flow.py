@@ -3,82 +3,85 @@
 from __future__ import annotations
 
 import math
-import types
-from dataclasses import dataclass
-from enum import IntEnum
+from types import SimpleNamespace
 
 import numpy as np
 
+from solver.section.flow import FlowColumn, FlowSettings, PointStatus, SectionFlow
+
 STALL = math.radians(12.0)
 """Angle of the made-up largest lift."""
+SLOPE, FALL = 5.8, 8.2
+"""Of lift up to there and behind it, per radian."""
 
 
-@dataclass(frozen=True)
-class FlowSettings:
-    critical_amplification: float = 9.0
-    trip_upper: float | None = None
-    trip_lower: float | None = None
-    nodes: int = 141
+class SampleSolver:
+    """Answers in place of the solver and remembers what it was asked.
 
+    `missing` says, of a Reynolds number and an angle in degrees, whether a point is
+    missing; `meanwhile` is called with what the solver would poll.
+    """
 
-class PointStatus(IntEnum):
-    CONVERGED = 0
-    APPROXIMATE = 1
-    MISSING = 2
-    BEYOND_STALL = 3
-
-
-class SampleSolver(types.ModuleType):
-    """A module to put in place of the solver's; it remembers what it was asked."""
-
-    FlowSettings, PointStatus = FlowSettings, PointStatus
-
-    def __init__(self, missing=lambda reynolds, degrees: False) -> None:
-        super().__init__("solver.section.flow")
-        self.asked: list[types.SimpleNamespace] = []
-        self.missing = missing
+    def __init__(self) -> None:
+        self.asked: list[SimpleNamespace] = []
+        self.missing = lambda reynolds, degrees: False
         self.meanwhile = lambda cancelled: None
 
-    def critical_amplification(self, turbulence):
-        return -8.43 - 2.4 * math.log(turbulence)
-
     def section_flow(
-        self, outline, *, angle, reynolds, settings, threads=1, on_column=None, cancelled=None
-    ):
+        self,
+        outline,
+        *,
+        angle,
+        reynolds,
+        settings=FlowSettings(),  # noqa: B008 - as the solver has it
+        threads=1,
+        on_column=None,
+        cancelled=None,
+    ) -> SectionFlow:
         self.asked.append(
-            types.SimpleNamespace(
+            SimpleNamespace(
                 outline=outline, angle=angle, reynolds=reynolds, settings=settings, threads=threads
             )
         )
         self.meanwhile(cancelled)
-        a, re = np.meshgrid(angle, reynolds, indexing="ij")
-        lift = 5.8 * a - 14.0 * np.maximum(a - STALL, 0.0)
-        gone = np.vectorize(self.missing)(re, np.degrees(a))
-        status = np.where(a > STALL + 1e-9, PointStatus.BEYOND_STALL, PointStatus.CONVERGED)
-        status[gone] = PointStatus.MISSING
-
-        def known(values):
-            return np.where(gone, np.nan, values)
-
-        flow = types.SimpleNamespace(
+        columns = [self.column(angle, one) for one in reynolds]
+        for column in columns:
+            on_column(column)
+        names = vars(columns[0]).keys() - {"angle", "reynolds", "largest_lift", "iterations"}
+        tables = {name: np.column_stack([vars(one)[name] for one in columns]) for name in names}
+        largest = np.array([one.largest_lift for one in columns])
+        return SectionFlow(
             name=outline.name,
             settings=settings,
             angle=angle,
             reynolds=reynolds,
-            lift=known(lift),
-            drag=known(0.01 + 0.02 * a**2),
-            moment=known(np.full_like(a, -1e-6)),
-            transition_upper=known(0.6 - a),
-            transition_lower=np.where(a < 0.0, np.nan, known(0.9)),
-            status=status.astype(np.uint8),
+            largest_lift=largest,
+            iterations=0,
+            **tables,
         )
-        top = angle[-1] - math.radians(1.0) >= STALL
-        flow.largest_lift = np.array([5.8 * STALL if top else np.nan for _ in reynolds])
-        if on_column is not None:
-            for j, one in enumerate(reynolds):
-                on_column(
-                    types.SimpleNamespace(
-                        reynolds=one, lift=flow.lift[:, j], status=flow.status[:, j]
-                    )
-                )
-        return flow
+
+    def column(self, angle, reynolds) -> FlowColumn:
+        past = angle > STALL + 1e-9
+        gone = np.array([self.missing(reynolds, one) for one in np.degrees(angle)])
+        status = np.where(past, PointStatus.BEYOND_STALL, PointStatus.CONVERGED)
+        nowhere = np.full_like(angle, np.nan)
+
+        def known(values):
+            return np.where(gone, np.nan, values)
+
+        return FlowColumn(
+            reynolds=float(reynolds),
+            angle=angle,
+            lift=known(np.where(past, SLOPE * STALL - FALL * (angle - STALL), SLOPE * angle)),
+            drag=known(0.01 + 0.02 * angle**2),
+            moment=known(-1e-6),
+            transition_upper=known(0.6 - angle),
+            transition_lower=known(np.where(angle < 0.0, np.nan, 0.9)),
+            separation_upper=nowhere,
+            separation_lower=nowhere,
+            reattachment_upper=nowhere,
+            reattachment_lower=nowhere,
+            status=np.where(gone, PointStatus.MISSING, status).astype(np.uint8),
+            largest_lift=SLOPE * STALL if (past & ~gone).any() else np.nan,
+            iterations=0,
+        )

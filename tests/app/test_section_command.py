@@ -6,6 +6,7 @@ import math
 import os
 import re
 import signal
+import subprocess
 import sys
 import threading
 from pathlib import Path
@@ -14,16 +15,25 @@ from types import SimpleNamespace
 import numpy as np
 import pytest
 
-from app import cli, cli_section, log, safe_write
-from app.tables import read_drag_table, read_lift_table, table_source
+from app import cli, cli_section, cli_section_options, log, safe_write
+from app.section_csv import COLUMNS, status_words
+from app.tables import read_drag_table, read_lift_table, read_outline_table, table_source
 from app.version import version
 from scenarios import FOLDER
 from solver.errors import InputError
+from solver.section import flow
 from solver.section.flap import deflect_flap
-from solver.section.geometry import naca_outline
-from tests.app.sample_flow import PointStatus, SampleSolver
+from solver.section.flow import (
+    FlowCancelledError,
+    FlowSettings,
+    PointStatus,
+    critical_amplification,
+)
+from solver.section.geometry import naca_outline, outline_from_coordinates
+from tests.app.sample_flow import SLOPE, SampleSolver
 
 E387 = str(FOLDER / "measured" / "e387_outline.csv")
+RUN = "import sys; from app.cli import main; sys.exit(main(sys.argv[1:]))"
 USUAL = ["--reynolds", "200e3", "100e3", "--angles", "-6", "18", "0.5"]
 
 
@@ -45,7 +55,7 @@ def kernels(monkeypatch):
 @pytest.fixture
 def solver(monkeypatch, kernels):
     standing_in = SampleSolver()
-    monkeypatch.setitem(sys.modules, "solver.section.flow", standing_in)
+    monkeypatch.setattr(flow, "section_flow", standing_in.section_flow)
     return standing_in
 
 
@@ -68,10 +78,8 @@ def test_the_solver_is_asked_what_the_command_says(solver, tmp_path, capsys):
     captured = capsys.readouterr()
     assert captured.out == ""
     assert captured.err.splitlines() == [
-        "Re 100,000: 49 of 49 points",
-        "Re 200,000: 49 of 49 points",
-        "Re 100,000: largest lift 1.21 at 12.0 deg",
-        "Re 200,000: largest lift 1.21 at 12.0 deg",
+        "Re 100,000: 49 of 49 points, largest lift 1.21 at 12.0 deg",
+        "Re 200,000: 49 of 49 points, largest lift 1.21 at 12.0 deg",
     ]
 
 
@@ -79,18 +87,41 @@ def test_what_is_not_said_is_as_it_is(solver, monkeypatch):
     monkeypatch.setattr(cli_section, "usable_cores", lambda: 5)
     assert cli.main(["section", "2412", *USUAL]) == cli.DONE
     (asked,) = solver.asked
-    assert asked.settings == solver.FlowSettings()
+    assert asked.settings == FlowSettings()
     assert asked.threads == 5
 
 
 def test_turbulence_is_translated_by_the_relation_of_the_solver(solver, capsys):
     assert cli.main(["section", "2412", *USUAL, "--turbulence", "0.3"]) == cli.DONE
     (asked,) = solver.asked
-    assert asked.settings.critical_amplification == solver.critical_amplification(0.003)
+    assert asked.settings.critical_amplification == critical_amplification(0.003)
     factor = f"{asked.settings.critical_amplification:.4g}"
     assert f"factor {factor}, which goes with a turbulence level of 0.3 percent" in (
         capsys.readouterr().out
     )
+
+
+@pytest.mark.parametrize(
+    "options",
+    [
+        ["--turbulence", "0.02"],
+        ["--turbulence", "2.98"],
+        ["--critical-factor", "0"],
+        ["--critical-factor", "20"],
+        ["--trip-upper", "0", "--trip-lower", "1"],
+        ["--flap", "0.5", "40"],
+        ["--flap", "0.95", "-40"],
+    ],
+    ids=" ".join,
+)
+def test_the_ends_of_the_ranges_are_taken_by_the_solver(options, solver):
+    assert cli.main(["section", "0012", *USUAL, *options]) == cli.DONE
+
+
+def test_ranges_lie_within_those_of_the_solver():
+    assert cli_section_options.REYNOLDS[0] >= flow.LEAST_REYNOLDS
+    assert cli_section_options.REYNOLDS[1] <= flow.MOST_REYNOLDS
+    assert flow.MOST_THREADS == cli_section_options.MOST_THREADS
 
 
 @pytest.mark.parametrize("name", ["2412", "NACA 2412", "naca2412"])
@@ -161,7 +192,9 @@ def test_missing_points_are_empty_cells_and_are_said(solver, tmp_path, capsys):
     )
     output = tmp_path / "polar.csv"
     assert cli.main(["section", "2412", *USUAL, "--output", str(output)]) == cli.DONE
-    assert "Re 100,000: 43 of 49 points; none at 3, 16 to 18 deg\n" in capsys.readouterr().err
+    assert (
+        "Re 100,000: 43 of 49 points (none at 3, 16 to 18 deg), largest" in capsys.readouterr().err
+    )
     text = output.read_text(encoding="utf-8")
     assert "nan" not in text
     gone = [row for row in rows_of(text) if row["status"] == "missing"]
@@ -181,7 +214,7 @@ def test_the_reader_of_measured_tables_takes_it(solver, tmp_path):
         assert low.angle == pytest.approx(asked.angle[:44], abs=1e-9)
         assert high.angle == pytest.approx(asked.angle, abs=1e-9)
         # Half of the last digit written.
-        assert high.lift[24] == pytest.approx(5.8 * asked.angle[24], abs=0.5e-4)
+        assert high.lift[24] == pytest.approx(SLOPE * asked.angle[24], abs=0.5e-4)
         assert high.drag[24] == pytest.approx(0.01 + 0.02 * asked.angle[24] ** 2, abs=0.5e-5)
         assert high.moment is not None
     assert "computed, not measured" in table_source(output)
@@ -190,7 +223,7 @@ def test_the_reader_of_measured_tables_takes_it(solver, tmp_path):
 def test_a_largest_lift_that_is_not_bracketed_is_said(solver, capsys):
     arguments = ["section", "2412", "--reynolds", "1e5", "--angles", "0", "5", "1"]
     assert cli.main(arguments) == cli.DONE
-    assert "Re 100,000: largest lift not bracketed\n" in capsys.readouterr().err
+    assert capsys.readouterr().err == "Re 100,000: 6 of 6 points, largest lift not bracketed\n"
 
 
 def test_where_every_point_fails_nothing_is_written(solver, kernels, tmp_path, capsys):
@@ -234,6 +267,15 @@ def test_ctrl_c_stops_the_threads_and_leaves_the_old_file(solver, tmp_path, caps
     assert signal.getsignal(signal.SIGINT) is before
     assert capsys.readouterr().err == "halfspan: stopped; nothing was written\n"
     assert [path.read_text(encoding="utf-8") for path in tmp_path.iterdir()] == ["the old one"]
+
+
+def test_a_flow_that_was_cancelled_counts_as_stopped(solver, capsys):
+    def cancel(_cancelled):
+        raise FlowCancelledError
+
+    solver.meanwhile = cancel
+    assert cli.main(["section", "2412", *USUAL]) == cli.INTERRUPTED
+    assert capsys.readouterr().err == "halfspan: stopped; nothing was written\n"
 
 
 def test_an_existing_file_is_replaced_in_one_step(solver, tmp_path, monkeypatch, capsys):
@@ -298,7 +340,7 @@ def test_what_cannot_be_used_is_one_sentence(
         ),
         ("2412 --reynolds 1e5 --angles 0 4 1 --turbulence 3", "from 0.02 to 2.98"),
         ("2412 --reynolds 1e5 --angles 0 4 1 --trip-upper 1.1", "from 0 to 1"),
-        ("2412 --reynolds 1e5 --angles 0 4 1 --threads 0", "from 1 to 256"),
+        ("2412 --reynolds 1e5 --angles 0 4 1 --threads 0", "from 1 to 64"),
     ],
 )
 def test_options_out_of_range_are_said(arguments, said, solver, capsys):
@@ -349,8 +391,6 @@ def test_a_flap_is_deflected_in_radians_and_said(solver, capsys):
 
 
 def test_statuses_have_a_word_each(solver):
-    from app.section_csv import status_words
-
     assert status_words() == {
         PointStatus.CONVERGED: "converged",
         PointStatus.APPROXIMATE: "approximate",
@@ -360,8 +400,6 @@ def test_statuses_have_a_word_each(solver):
 
 
 def test_the_manual_names_every_option_column_and_status(solver, capsys):
-    from app.section_csv import COLUMNS, status_words
-
     manual = (FOLDER.parent / "docs" / "command-line.md").read_text(encoding="utf-8")
     with pytest.raises(SystemExit):
         cli.main(["section", "--help"])
@@ -369,3 +407,47 @@ def test_the_manual_names_every_option_column_and_status(solver, capsys):
     assert len(options) == 10
     for name in (*options, *COLUMNS, *status_words().values()):
         assert f"`{name}" in manual, name
+
+
+@pytest.mark.slow
+@pytest.mark.usefixtures("compiled_kernels")
+def test_the_real_solver_answers_in_a_process_of_its_own(tmp_path):
+    output = tmp_path / "polar.csv"
+    angles = ["--angles", "0", "4", "1"]
+    options = ["--trip-upper", "0.3", "--flap", "0.75", "3", "--threads", "2"]
+    command = subprocess.run(
+        [
+            *[sys.executable, "-c", RUN, "section", E387, *USUAL[:3], *angles, *options],
+            *["--output", str(output)],
+        ],
+        capture_output=True,
+        text=True,
+        check=False,
+        cwd=FOLDER.parent,
+        env={**os.environ, "XDG_STATE_HOME": str(tmp_path)},
+        timeout=120,
+    )
+    assert command.returncode == cli.DONE, command.stderr
+    said = sorted(line.split(" points")[0] for line in command.stderr.splitlines())
+    assert said == ["Re 100,000: 5 of 5", "Re 200,000: 5 of 5"]
+    rows = rows_of(output.read_text(encoding="utf-8"))
+    assert {row["status"] for row in rows} == {"converged"}
+    expected = flow.section_flow(
+        deflect_flap(
+            outline_from_coordinates(*read_outline_table(E387)),
+            hinge=0.75,
+            deflection=math.radians(3.0),
+        ),
+        angle=np.radians(np.arange(5.0)),
+        reynolds=[100e3, 200e3],
+        settings=FlowSettings(trip_upper=0.3),
+    )
+    # Half of the last digit written.
+    for name, values, play in (
+        ("cl", expected.lift, 0.5e-4),
+        ("cd", expected.drag, 0.5e-5),
+        ("cm", expected.moment, 0.5e-4),
+        ("transition_upper", expected.transition_upper, 0.5e-4),
+    ):
+        written = [float(row[name]) for row in rows]
+        assert written == pytest.approx(values.T.ravel(), abs=1.001 * play), name
