@@ -13,6 +13,7 @@ from functools import lru_cache
 
 import numpy as np
 from numpy.typing import NDArray
+from scipy.interpolate import BSpline
 from scipy.optimize import minimize_scalar
 
 from solver.errors import InputError
@@ -40,7 +41,12 @@ ROUNDING_SCATTER = 1.0 / np.sqrt(12.0)
 """Root mean square of an error spread evenly over one printed step, in steps."""
 ALIKE = 1e-12
 """Difference of two surfaces below which a section is symmetric, over chord."""
-NOSE_KNOTS = 50
+LARGEST_SHIFT = 5e-4
+"""Of the curve from a point, over chord: what scatters by more has a shape that is not smooth."""
+STEPS_BACK = 12
+NOSE_KNOTS = 100
+NOSE_STIFFNESS = 1e-10
+"""At the least, where the foremost place is sought: the bending must tell, not the knots."""
 SLOPE_DEGREE = 9
 """Of the polynomial whose slope turns vertical misfits into distances."""
 
@@ -87,8 +93,9 @@ def fair_outline(outline: Outline) -> FairOutline:
     over the lower surface through zero at the nose to pi, so that neither a round
     nose nor a trailing edge is singular. The function is a cubic smoothing spline
     whose smoothing is found by cross-validation, at the least so much that the
-    misfits come to the rounding of the list (:attr:`Outline.rounding`). The
-    foremost place x_0 is the one that makes the curve near the nose smoothest.
+    misfits come to the rounding of the list (:attr:`Outline.rounding`), and less where
+    a point would be left by more than 5e-4 of the chord. The foremost place x_0 is
+    the one that makes the curve near the nose smoothest.
 
     On published lists of sections for model aircraft the curve keeps within the
     rounding of the print, except where the list scatters by more: that of the
@@ -102,15 +109,14 @@ def fair_outline(outline: Outline) -> FairOutline:
     for _ in range(ROUNDS):
         nose, upper = _foremost(x, y, stiffness=stiffness)
         family, stiffness, angle = _fit(x, y, nose=nose, upper=upper, scatter=scatter)
-    height = family.member(stiffness)
+    height, shift = _held(family, stiffness, angle, y[::-1])
     at = np.linspace(np.pi, -np.pi, FAIR_POINTS)
     laid = np.column_stack([nose + (x[0] - nose) * np.sin(0.5 * at) ** 2, height(at)])
     if np.abs(points - points[::-1] * [1.0, -1.0]).max() < ALIKE:
         laid[:, 1] = 0.5 * (laid[:, 1] - laid[::-1, 1])
     laid[[0, -1]] = points[0]
-    misfit = _weights(angle, y[::-1]) * (y[::-1] - height(angle))
     fair = replace(outline, x=laid[:, 0].copy(), y=laid[:, 1].copy(), rounding=0.0)
-    return FairOutline(fair, float(np.abs(misfit[1:-1]).max()))
+    return FairOutline(fair, shift)
 
 
 def closed_points(outline: Outline) -> FloatArray:
@@ -178,6 +184,20 @@ def _fit(
     return family, chosen_stiffness(family, least_scatter=scatter), angle
 
 
+def _held(
+    family: SplineFamily, stiffness: float, angle: FloatArray, height: FloatArray
+) -> tuple[BSpline, float]:
+    """Find the curve and its largest distance from a point, made less stiff where that is large."""
+    weight = _weights(angle, height)[1:-1]
+    for _ in range(STEPS_BACK):
+        curve = family.member(stiffness)
+        shift = float(np.abs(weight * (height - curve(angle))[1:-1]).max())
+        if shift <= LARGEST_SHIFT:
+            break
+        stiffness /= 10.0
+    return curve, shift
+
+
 def _foremost(x: FloatArray, y: FloatArray, *, stiffness: float) -> tuple[float, bool]:
     """Find where the curve is foremost, and whether the foremost point lies above that."""
     near = int(np.argmin(x))
@@ -194,7 +214,7 @@ def _foremost(x: FloatArray, y: FloatArray, *, stiffness: float) -> tuple[float,
         family = spline_family(
             angle, height, weight=weight, level_ends=False, most_knots=NOSE_KNOTS
         )
-        return family.compromise(stiffness)
+        return family.compromise(max(stiffness, NOSE_STIFFNESS))
 
     tried = [
         (roughness(offset, upper), k, upper)

