@@ -9,7 +9,7 @@ import threading
 from collections.abc import Callable, Sequence
 from concurrent.futures import ThreadPoolExecutor, as_completed
 from dataclasses import fields
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Any
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
@@ -26,6 +26,7 @@ from solver.section.flow_results import (
 )
 from solver.section.geometry import Outline
 from solver.section.lift_limits import past_stall
+from solver.section.one_thread import linear_algebra_on_one_thread
 from solver.section.panelling import PanelNodes, panel_nodes
 from solver.section.sweeps import LiftLimit, first_attached_peak
 
@@ -41,6 +42,7 @@ __all__ = [
     "PointStatus",
     "SectionFlow",
     "critical_amplification",
+    "distributions",
     "section_flow",
 ]
 
@@ -103,12 +105,7 @@ def section_flow(
     transition by e^n, and a wake, at every point solved together by Newton's method.
     See :mod:`solver.section.boundary_layer`.
     """
-    angles = _ascending("angle", angle)
-    numbers = _ascending("reynolds", reynolds)
-    require_within(-LARGEST_ANGLE, LARGEST_ANGLE, angle=angles[0])
-    require_within(-LARGEST_ANGLE, LARGEST_ANGLE, angle=angles[-1])
-    require_within(LEAST_REYNOLDS, MOST_REYNOLDS, reynolds=numbers[0])
-    require_within(LEAST_REYNOLDS, MOST_REYNOLDS, reynolds=numbers[-1])
+    angles, numbers = _checked(angle, reynolds)
     if not 1 <= threads <= MOST_THREADS:
         raise InputError("threads", threads, f"between 1 and {MOST_THREADS}")
     nodes = panel_nodes(outline, nodes=settings.nodes)
@@ -121,9 +118,6 @@ def section_flow(
         if stopped.is_set() or (cancelled is not None and cancelled()):
             raise FlowCancelledError
 
-    poll()
-    panels, conditions = _prepared(nodes, settings)
-
     def column(number: float) -> FlowColumn:
         solved = solve_column(panels, conditions, angle=angles, reynolds=number, poll=poll)
         done = _column(angles, number, solved)
@@ -131,16 +125,66 @@ def section_flow(
             on_column(done)
         return done
 
-    pool = ThreadPoolExecutor(min(threads, len(numbers)), thread_name_prefix="section-flow")
-    try:
-        waiting = [pool.submit(column, float(number)) for number in numbers[::-1]]
-        for future in as_completed(waiting):
-            future.result()
-    finally:
-        # Whatever ended the wait: no worker begins another point.
-        stopped.set()
-        pool.shutdown(cancel_futures=True)
+    poll()
+    with linear_algebra_on_one_thread():
+        panels, conditions = _prepared(nodes, settings)
+        pool = ThreadPoolExecutor(min(threads, len(numbers)), thread_name_prefix="section-flow")
+        try:
+            waiting = [pool.submit(column, float(number)) for number in numbers[::-1]]
+            for future in as_completed(waiting):
+                future.result()
+        finally:
+            # Whatever ended the wait: no worker begins another point.
+            stopped.set()
+            pool.shutdown(cancel_futures=True)
     return _together(outline.name, settings, [future.result() for future in waiting[::-1]])
+
+
+def distributions(
+    outline: Outline,
+    *,
+    angle: float,
+    reynolds: float,
+    settings: FlowSettings = FlowSettings(),  # noqa: B008
+) -> Distributions:
+    """Solve the flow about a section at one point, and keep its layers.
+
+    Parameters
+    ----------
+    outline : Outline
+    angle : float
+        Of attack, within 30 degrees. [rad]
+    reynolds : float
+        On chord, 1e4 to 1e8. [-]
+    settings : FlowSettings, optional
+
+    Returns
+    -------
+    Distributions
+        Its status is converged, approximate or missing: a single point cannot tell
+        where the stall is.
+
+    Raises
+    ------
+    InputError
+        If outline or argument cannot be used.
+    """
+    (one,), (number,) = _checked([angle], [reynolds])
+    nodes = panel_nodes(outline, nodes=settings.nodes)
+
+    from solver.section.boundary_layer.profile import profile
+
+    with linear_algebra_on_one_thread():
+        return profile(*_prepared(nodes, settings), angle=float(one), reynolds=float(number))
+
+
+def _checked(angle: ArrayLike, reynolds: ArrayLike) -> tuple[FloatArray, FloatArray]:
+    """Refuse angles and Reynolds numbers that do not ascend or are out of range."""
+    angles, numbers = _ascending("angle", angle), _ascending("reynolds", reynolds)
+    for end in (0, -1):
+        require_within(-LARGEST_ANGLE, LARGEST_ANGLE, angle=float(angles[end]))
+        require_within(LEAST_REYNOLDS, MOST_REYNOLDS, reynolds=float(numbers[end]))
+    return angles, numbers
 
 
 def _ascending(name: str, values: ArrayLike) -> FloatArray:
@@ -185,8 +229,7 @@ def _column(angle: FloatArray, reynolds: float, solved: Column) -> FlowColumn:
 
     values = {name: solved.readings[:, k].copy() for k, name in enumerate(READINGS)}
     status, largest = _with_stall(angle, values["lift"], solved.status)
-    for array in (status, *values.values()):
-        array.setflags(write=False)
+    _freeze(status, *values.values())
     return FlowColumn(
         reynolds=reynolds,
         angle=angle,
@@ -222,14 +265,13 @@ def _limit(angle: FloatArray, lift: FloatArray) -> LiftLimit | None:
 
 def _together(name: str, settings: FlowSettings, columns: Sequence[FlowColumn]) -> SectionFlow:
     """Set columns side by side."""
-    tables = {}
+    tables: dict[str, NDArray[Any]] = {}
     for field in fields(FlowColumn):
         if field.name not in ("reynolds", "angle", "largest_lift", "iterations"):
             tables[field.name] = np.column_stack([getattr(one, field.name) for one in columns])
     largest = np.array([one.largest_lift for one in columns])
     reynolds = np.array([one.reynolds for one in columns])
-    for array in (largest, reynolds, *tables.values()):
-        array.setflags(write=False)
+    _freeze(largest, reynolds, *tables.values())
     return SectionFlow(
         name=name,
         settings=settings,
@@ -239,3 +281,8 @@ def _together(name: str, settings: FlowSettings, columns: Sequence[FlowColumn]) 
         iterations=sum(one.iterations for one in columns),
         **tables,
     )
+
+
+def _freeze(*arrays: NDArray[Any]) -> None:
+    for array in arrays:
+        array.setflags(write=False)

@@ -9,7 +9,7 @@ Reynolds number: one :class:`Influence` serves all points of a polar.
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, fields
 
 import numpy as np
 from numpy.typing import NDArray
@@ -266,6 +266,34 @@ def influence(nodes: PanelNodes, wake: Wake) -> Influence:
         normal_sheet=normal[:, sheets].copy(),
         wake=wake,
     )
+
+
+def between(one: Influence, other: Influence, share: float) -> Influence:
+    """Potential flow between two that differ by where the wake lies.
+
+    Parameters
+    ----------
+    one, other : Influence
+        Of the same body, with wakes of the same distances.
+    share : float
+        Of the other, 0 to 1. [-]
+
+    Returns
+    -------
+    Influence
+        Linear in the share, as it is in the wake's place where that moves little.
+    """
+
+    def mixed(a: FloatArray, b: FloatArray) -> FloatArray:
+        return np.asarray(a + share * (b - a), dtype=np.float64)
+
+    values = {
+        field.name: mixed(getattr(one, field.name), getattr(other, field.name))
+        for field in fields(Influence)
+        if field.name != "wake"
+    }
+    wake = Wake(mixed(one.wake.x, other.wake.x), mixed(one.wake.y, other.wake.y), one.wake.distance)
+    return Influence(wake=wake, **values)
 
 
 def _bisector(body: _Panels) -> ComplexArray:

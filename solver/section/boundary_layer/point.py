@@ -15,7 +15,7 @@ from solver.section.boundary_layer.readings import half_friction, stations
 from solver.section.boundary_layer.solve import solve_point, wake_angles
 from solver.section.boundary_layer.start import start
 from solver.section.panelling import PanelNodes
-from solver.section.potential_flow import Influence, Wake, influence, straight_wake
+from solver.section.potential_flow import Influence, Wake, between, influence, straight_wake
 
 FloatArray = NDArray[np.float64]
 IntArray = NDArray[np.int64]
@@ -29,8 +29,9 @@ NEVER = 9.0
 TRIP_ROUNDS, TRIP_TOLERANCE = 5, 1e-6
 """A trip is so far from the stagnation point, which is known after an iteration only."""
 
-WAKE_PASSES, WAKE_ANGLE, WAKE_REYNOLDS, WAKE_CRITICAL = 2, np.radians(4.0), 3e6, 9.0
-"""Where the wake's path is followed, once for all points of a section."""
+WAKE_PASSES, WAKE_REYNOLDS, WAKE_CRITICAL = 2, 3e6, 9.0
+WAKE_ANGLE = np.radians(4.0)
+"""Up and down, where the wake's path is followed, once for all points of a section."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -41,12 +42,13 @@ class SectionPanels:
     ----------
     nodes : PanelNodes
         Of the body.
-    influence : Influence
-        Of body and wake.
+    falling, rising : Influence
+        Of body and wake, the wake laid for an angle of -4 and of 4 degrees.
     """
 
     nodes: PanelNodes
-    influence: Influence
+    falling: Influence
+    rising: Influence
 
     @cached_property
     def count(self) -> int:
@@ -56,18 +58,31 @@ class SectionPanels:
     @cached_property
     def total(self) -> int:
         """Nodes of body and wake."""
-        return len(self.influence.along)
+        return len(self.rising.along)
 
     @cached_property
     def curvature(self) -> FloatArray:
         """Of the wall at the nodes."""
         return wall_curvature(self.nodes)
 
-    @cached_property
-    def path_angle(self) -> FloatArray:
-        """Direction of each wake panel [rad]."""
-        wake = self.influence.wake
-        return np.asarray(np.arctan2(np.diff(wake.y), np.diff(wake.x)), dtype=np.float64)
+    def influence(self, angle: float) -> Influence:
+        """Potential flow for an angle of attack.
+
+        Parameters
+        ----------
+        angle : float
+            [rad]
+
+        Returns
+        -------
+        Influence
+            Between both wakes in proportion to the angle, beyond them that of the
+            nearer one: a section turned over flies as before.
+        """
+        share = min(max(0.5 + 0.5 * angle / WAKE_ANGLE, 0.0), 1.0)
+        if share == 1.0 or self.falling is self.rising:
+            return self.rising
+        return self.falling if share == 0.0 else between(self.falling, self.rising, share)
 
 
 @dataclass(frozen=True, eq=False)
@@ -195,7 +210,7 @@ def cold_start(
         share=np.zeros(2),
         laminar=np.zeros(total, dtype=np.bool_),
     )
-    flow = panels.influence
+    flow = panels.influence(angle)
     speed = flow.along * np.cos(angle) + flow.across * np.sin(angle)
     # The kernel finds the stagnation point itself; a trip needs a first idea of it.
     turns = np.flatnonzero((speed[: count - 1] < 0.0) & (speed[1:count] >= 0.0))
@@ -235,7 +250,7 @@ def iterate(
     -------
     Outcome
     """
-    flow, count = panels.influence, panels.count
+    flow, count = panels.influence(angle), panels.count
     cosine, sine = np.cos(angle), np.sin(angle)
     base = flow.along * cosine + flow.across * sine
     normal = flow.normal_along * cosine + flow.normal_across * sine
@@ -245,7 +260,7 @@ def iterate(
         from_place = state.place[1]
         ended, rounds, change = solve_point(
             base, flow.defect, flow.sheet, normal, flow.normal_defect, flow.normal_sheet,
-            panels.path_angle, panels.nodes.arc, flow.wake.distance, count, reynolds,
+            _directions(flow.wake), panels.nodes.arc, flow.wake.distance, count, reynolds,
             conditions.critical, conditions.trips(from_place), conditions.array,
             state.stations, state.amplification, state.turbulent_from, state.place, state.sheet,
             state.share, state.laminar, history, iterations,
@@ -316,28 +331,39 @@ def prepared(nodes: PanelNodes, constants: ClosureConstants) -> SectionPanels:
     Returns
     -------
     SectionPanels
-        With one wake for all points, that at 4 degrees and a Reynolds number of 3e6,
-        or a straight one where that point is not found.
+        With the wakes at -4 and at 4 degrees and a Reynolds number of 3e6, straight
+        ones where those points are not found.
     """
-    panels = SectionPanels(nodes, influence(nodes, straight_wake(nodes)))
+    straight = influence(nodes, straight_wake(nodes))
     conditions = Conditions(WAKE_CRITICAL, None, None, constants)
-    state = None
+    falling, rising = (
+        _with_wake_along_flow(nodes, straight, conditions, angle)
+        for angle in (-WAKE_ANGLE, WAKE_ANGLE)
+    )
+    return SectionPanels(nodes, falling, rising)
+
+
+def _with_wake_along_flow(
+    nodes: PanelNodes, flow: Influence, conditions: Conditions, angle: float
+) -> Influence:
+    """Move the wake to where the flow goes at an angle."""
+    panels = SectionPanels(nodes, flow, flow)
+    state = cold_start(panels, conditions, angle=angle, reynolds=WAKE_REYNOLDS)
     for _ in range(WAKE_PASSES):
-        if state is None:
-            state = cold_start(panels, conditions, angle=WAKE_ANGLE, reynolds=WAKE_REYNOLDS)
         outcome = iterate(
-            panels, conditions, state, angle=WAKE_ANGLE, reynolds=WAKE_REYNOLDS, iterations=60
+            panels, conditions, state, angle=angle, reynolds=WAKE_REYNOLDS, iterations=60
         )
         if outcome.ended == BROKEN:
             break
-        panels = SectionPanels(nodes, influence(nodes, _followed(panels, state)))
-    return panels
+        flow = influence(nodes, _followed(panels, state, angle))
+        panels = SectionPanels(nodes, flow, flow)
+    return flow
 
 
-def _followed(panels: SectionPanels, state: LayerState) -> Wake:
-    """Path of the flow behind the section in a state at the wake's angle."""
-    flow, count = panels.influence, panels.count
-    cosine, sine = np.cos(WAKE_ANGLE), np.sin(WAKE_ANGLE)
+def _followed(panels: SectionPanels, state: LayerState, angle: float) -> Wake:
+    """Path of the flow behind the section in a state."""
+    flow, count = panels.influence(angle), panels.count
+    cosine, sine = np.cos(angle), np.sin(angle)
     base = flow.along * cosine + flow.across * sine
     normal = flow.normal_along * cosine + flow.normal_across * sine
     speed, direction = np.empty(panels.total), np.empty(panels.total - count)
@@ -345,7 +371,7 @@ def _followed(panels: SectionPanels, state: LayerState) -> Wake:
     speeds(base, flow.defect, flow.sheet, state.sheet, state.stations, stagnation, count, speed)
     wake_angles(
         normal, flow.normal_defect, flow.normal_sheet, state.sheet, state.stations, stagnation,
-        count, speed, panels.path_angle, direction,
+        count, speed, _directions(flow.wake), direction,
     )  # fmt: skip
     step = np.diff(flow.wake.distance)
     return Wake(
@@ -353,3 +379,8 @@ def _followed(panels: SectionPanels, state: LayerState) -> Wake:
         flow.wake.y[0] + np.append(0.0, np.cumsum(step * np.sin(direction))),
         flow.wake.distance,
     )
+
+
+def _directions(wake: Wake) -> FloatArray:
+    """Direction of each wake panel [rad]."""
+    return np.asarray(np.arctan2(np.diff(wake.y), np.diff(wake.x)), dtype=np.float64)

@@ -33,9 +33,11 @@ MOST_ITERATIONS, SUB_ITERATIONS = 40, 25
 """Of a try; of a step on the way to it."""
 SUB_STEPS = 4
 """Between a neighbour and a point that does not follow from it at once."""
+LONGEST_STEP = np.radians(1.0)
+"""Of a sweep to one angle."""
 FARTHEST_NEIGHBOUR = np.radians(3.0)
 """From which sub-steps are tried."""
-REYNOLDS_STEPS = (4.0, 2.5, 1.6, 1.25, 1.0)
+WAY_DOWN = (4.0, 2.5, 1.6, 1.25, 1.0)
 """Times the Reynolds number, on the way down to it at one angle."""
 NEARLY_AT_REST = 3e-3
 """Largest change in the last iteration of a point that is kept as approximate: of the
@@ -81,11 +83,12 @@ class _Sweep:
     ) -> None:
         self.panels, self.conditions = panels, conditions
         self.angle, self.reynolds, self.poll = angle, reynolds, poll
+        self.first = int(np.argmin(np.abs(angle - START_ANGLE)))
         self.points: dict[int, _Point] = {}
         self.iterations = 0
 
     def iterate(
-        self, state: LayerState, *, angle: float, factor: float = 1.0, most: int = MOST_ITERATIONS
+        self, state: LayerState, *, angle: float, factor: float = 1.0, most: int | None = None
     ) -> Outcome:
         outcome = iterate(
             self.panels,
@@ -93,7 +96,7 @@ class _Sweep:
             state,
             angle=angle,
             reynolds=factor * self.reynolds,
-            iterations=most,
+            iterations=MOST_ITERATIONS if most is None else most,
         )
         self.iterations += outcome.iterations
         return outcome
@@ -110,9 +113,8 @@ class _Sweep:
             yield self.warm(index, neighbour)
             if abs(angle - self.angle[neighbour]) <= FARTHEST_NEIGHBOUR:
                 yield self.by_sub_steps(index, neighbour)
-        state = self.cold(angle)
-        yield state, self.iterate(state, angle=angle)
-        yield self.down_from_higher_reynolds(angle)
+        yield self.afresh(angle, (1.0,))
+        yield self.afresh(angle, WAY_DOWN)
 
     def warm(self, index: int, neighbour: int) -> tuple[LayerState, Outcome]:
         state = self.points[neighbour].state.copy()
@@ -127,13 +129,14 @@ class _Sweep:
                 return state, outcome
         return state, self.iterate(state, angle=float(steps[-1]))
 
-    def down_from_higher_reynolds(self, angle: float) -> tuple[LayerState, Outcome]:
-        state = self.cold(angle, REYNOLDS_STEPS[0])
-        for factor in REYNOLDS_STEPS[:-1]:
+    def afresh(self, angle: float, factors: tuple[float, ...]) -> tuple[LayerState, Outcome]:
+        """From layers marched at a multiple of the Reynolds number, going down from it."""
+        state = self.cold(angle, factors[0])
+        for factor in factors[:-1]:
             outcome = self.iterate(state, angle=angle, factor=factor, most=SUB_ITERATIONS)
             if outcome.ended == BROKEN:
                 return state, outcome
-        return state, self.iterate(state, angle=angle, factor=REYNOLDS_STEPS[-1])
+        return state, self.iterate(state, angle=angle, factor=factors[-1])
 
     def find(self, index: int, ways: Iterable[tuple[LayerState, Outcome]]) -> bool:
         """Keep the first way that comes to rest, or else the one nearest to it."""
@@ -151,9 +154,9 @@ class _Sweep:
 
     def outwards(self) -> None:
         """From the start up, then from the start down."""
-        first = int(np.argmin(np.abs(self.angle - START_ANGLE)))
+        first = self.first
         for order in (range(first, len(self.angle)), range(first - 1, -1, -1)):
-            last = first if first in self.points else None
+            last: int | None = first if first in self.points else None
             for index in order:
                 self.poll()
                 if self.find(index, self.tries(index, last)):
@@ -161,21 +164,41 @@ class _Sweep:
 
     def inwards(self) -> None:
         """Once more at what is missing, from the neighbour on the far side."""
-        first = int(np.argmin(np.abs(self.angle - START_ANGLE)))
-        for order, side in (
-            (range(len(self.angle) - 2, first - 1, -1), 1),
-            (range(1, first), -1),
-        ):
+        last = len(self.angle) - 1
+        for order, side in ((range(last - 1, self.first - 1, -1), 1), (range(1, self.first), -1)):
             for index in order:
-                neighbour = index + side
-                known = self.points.get(index)
-                if neighbour not in self.points or (known and known.status == FOUND):
-                    continue
-                self.poll()
-                self.find(
-                    index,
-                    (way(index, neighbour) for way in (self.warm, self.by_sub_steps)),
-                )
+                known, neighbour = self.points.get(index), index + side
+                if neighbour in self.points and (known is None or known.status != FOUND):
+                    self.poll()
+                    ways = (way(index, neighbour) for way in (self.warm, self.by_sub_steps))
+                    self.find(index, ways)
+
+
+def solve_single(
+    panels: SectionPanels, conditions: Conditions, *, angle: float, reynolds: float
+) -> tuple[LayerState | None, int]:
+    """Solve one angle by the same ways, from the angle where sweeps begin.
+
+    Parameters
+    ----------
+    panels : SectionPanels
+    conditions : Conditions
+    angle : float
+        [rad]
+    reynolds : float
+        [-]
+
+    Returns
+    -------
+    tuple of LayerState or None, int
+        The state, None where it is `LOST`; `FOUND`, `NEARLY` or `LOST`.
+    """
+    steps = 1 + int(np.ceil(abs(angle - START_ANGLE) / LONGEST_STEP))
+    angles = np.unique(np.linspace(START_ANGLE, angle, steps))
+    sweep = _Sweep(panels, conditions, angles, reynolds, lambda: None)
+    sweep.outwards()
+    point = sweep.points.get(int(np.argmin(np.abs(angles - angle))))
+    return (None, LOST) if point is None else (point.state, point.status)
 
 
 def solve_column(
@@ -208,7 +231,7 @@ def solve_column(
     -----
     The sweep begins near 2 degrees and goes up, then down. A point follows from its
     neighbour; where it does not, by sub-steps in angle, then from layers marched
-    afresh, then down from four times the Reynolds number; last, once both directions
+    afresh, then down from four times the Reynolds number; and once both directions
     are through, from its neighbour on the far side. What does not come to rest is
     kept as approximate where its last change was below `NEARLY_AT_REST`.
     """

@@ -1,0 +1,47 @@
+import math
+
+import pytest
+
+from solver.errors import InputError
+from solver.section.flow import FlowSettings, critical_amplification
+
+
+def test_macks_relation_gives_nine_at_seven_hundredths_of_a_percent():
+    # The pair is given with two digits.
+    assert critical_amplification(0.0007) == pytest.approx(9.0, abs=0.05)
+
+
+def test_a_factor_of_e_in_turbulence_is_worth_2_4():
+    quiet, rough = critical_amplification(0.001), critical_amplification(0.001 * math.e)
+    assert quiet - rough == pytest.approx(2.4, abs=1e-12)  # rounding
+
+
+def test_no_amplification_is_left_at_the_roughest_air_and_not_before():
+    assert 0.0 < critical_amplification(0.0298) < 0.01
+
+
+@pytest.mark.parametrize("turbulence", [0.0, -0.001, 0.0001, 0.03, math.nan, math.inf])
+def test_turbulence_outside_the_relation_is_refused(turbulence):
+    with pytest.raises(InputError, match=r"between 0\.0002 and 0\.0298") as caught:
+        critical_amplification(turbulence)
+    assert caught.value.name == "turbulence"
+
+
+@pytest.mark.parametrize(
+    ("field", "value"),
+    [
+        ("critical_amplification", -0.1),
+        ("critical_amplification", math.nan),
+        ("critical_amplification", 20.5),
+        ("trip_upper", -0.01),
+        ("trip_upper", 1.01),
+        ("trip_lower", math.nan),
+        ("nodes", 140),
+        ("nodes", 99),
+        ("nodes", 203),
+    ],
+)
+def test_settings_out_of_range_are_named(field, value):
+    with pytest.raises(InputError) as caught:
+        FlowSettings(**{field: value})
+    assert caught.value.name == field
