@@ -19,14 +19,37 @@ from solver.section.boundary_layer.newton import (
     side_node,
 )
 
+FLOW_LAMINAR, FLOW_TURNING = np.int64(LAMINAR), np.int64(-1)
+FLOW_TURBULENT, FLOW_WAKE = np.int64(TURBULENT), np.int64(WAKE)
+"""Kinds of a cell, the one with transition among them. Of a type of their own: for plain
+numbers the compiler would make every kernel once more for each of them."""
+
 LARGEST_LAMINAR_H, LARGEST_TURBULENT_H = 3.7, 2.6
 """Past these the shape parameter is prescribed and the speed is let go."""
+
+
+@numba.njit(cache=True, nogil=True, error_model="numpy")
+def _solve_three(matrix, residual, step):
+    """Fill the step that takes three residuals to zero; returns success."""
+    a, b, c = matrix[0]
+    d, e, f = matrix[1]
+    g, h, i = matrix[2]
+    p, q, r = e * i - f * h, c * h - b * i, b * f - c * e
+    determinant = a * p + d * q + g * r
+    if determinant == 0.0 or not math.isfinite(determinant):
+        return False
+    x, y, z = -residual[0] / determinant, -residual[1] / determinant, -residual[2] / determinant
+    step[0] = p * x + q * y + r * z
+    step[1] = (f * g - d * i) * x + (a * i - c * g) * y + (c * d - a * f) * z
+    step[2] = (d * h - e * g) * x + (b * g - a * h) * y + (a * e - b * d) * z
+    return True
 
 
 @numba.njit(cache=True, nogil=True, error_model="numpy")
 def _solve_cell(kind, one, two, xi, reynolds, critical, trip, constants, buffers, fixed_h):
     """Solve a cell for station two: speed given, or shape parameter given (fixed_h > 0)."""
     work, more, residual, first, second = buffers
+    matrix, step = np.empty((3, 3)), np.empty(3)
     if fixed_h > 0.0:
         two[1] = two[0] + math.log(fixed_h)
     for _ in range(25):
@@ -35,7 +58,6 @@ def _solve_cell(kind, one, two, xi, reynolds, critical, trip, constants, buffers
                             residual, first, second)  # fmt: skip
         else:
             cell(kind, one, two, xi, reynolds, constants, work, residual, first, second)
-        matrix = np.empty((3, 3))
         for r in range(3):
             if fixed_h > 0.0:
                 matrix[r, 0] = second[r, 0] + second[r, 1]
@@ -44,10 +66,8 @@ def _solve_cell(kind, one, two, xi, reynolds, critical, trip, constants, buffers
                 matrix[r, 0] = second[r, 0]
                 matrix[r, 1] = second[r, 1]
             matrix[r, 2] = second[r, 3]
-        d = np.linalg.det(matrix)
-        if d == 0.0 or not math.isfinite(d):
+        if not _solve_three(matrix, residual, step):
             return False
-        step = np.linalg.solve(matrix, -residual)
         largest = max(abs(step[0]), abs(step[1]))
         if kind != LAMINAR:
             largest = max(largest, abs(step[2]))
@@ -123,7 +143,7 @@ def start_side(side, stagnation, point, arc, nodes, reynolds, critical, trip, co
         if turbulent_from < 0:
             one[3] = amplification[last]
             two[3] = one[3]
-            _step(LAMINAR, one, two, xi, reynolds, critical, trip, constants, buffers,
+            _step(FLOW_LAMINAR, one, two, xi, reynolds, critical, trip, constants, buffers,
                   LARGEST_LAMINAR_H)  # fmt: skip
             if two[3] <= critical and xi[1] <= trip:
                 amplification[node] = two[3]
@@ -134,12 +154,12 @@ def start_side(side, stagnation, point, arc, nodes, reynolds, critical, trip, co
             amplification[node] = two[3]
             two[2] = state[node, 2]
             two[3] = initial_stress(two, reynolds, constants, work)
-            _step(-1, one, two, xi, reynolds, critical, trip, constants, buffers,
+            _step(FLOW_TURNING, one, two, xi, reynolds, critical, trip, constants, buffers,
                   LARGEST_TURBULENT_H)  # fmt: skip
         else:
             amplification[node] = amplification[last]
             two[3] = one[3]
-            _step(TURBULENT, one, two, xi, reynolds, critical, trip, constants, buffers,
+            _step(FLOW_TURBULENT, one, two, xi, reynolds, critical, trip, constants, buffers,
                   LARGEST_TURBULENT_H)  # fmt: skip
         state[node] = two
     return turbulent_from
@@ -183,7 +203,7 @@ def start(speed, arc, distance, nodes, reynolds, critical, trip, constants, stat
         xi[0], xi[1] = 1.0 + distance[k], 1.0 + distance[k + 1]
         two[:] = one
         two[2] = state[node, 2]
-        _step(WAKE, one, two, xi, reynolds, critical, 9.0, constants, buffers, 2.6)
+        _step(FLOW_WAKE, one, two, xi, reynolds, critical, 9.0, constants, buffers, 2.6)
         state[node] = two
         one[:] = two
     return stagnation, point
