@@ -236,12 +236,15 @@ def influence(nodes: PanelNodes, wake: Wake) -> Influence:
     body_part = _integrals(inside, body)
     _own_middle((body_part[0][:-1], body_part[1][:-1]), body, 1.0)
     wake_part = _integrals(inside, behind)
+    body_sources = body_part[0].copy()
+    own = np.arange(count - 1)
+    body_sources[own, own] += 0.5j * _turn_along(body) * np.conj(body.direction) / (2.0 * np.pi)
 
     matrix = np.zeros((count + 1, count + 1))
     matrix[:count, :count] = _component(-1j * _hats(*body_part), inward)
     matrix[: count - 1, count] = -1.0
     matrix[count, 0] = matrix[count, count - 1] = 1.0
-    sources = np.hstack([body_part[0], wake_part[0]])
+    sources = np.hstack([body_sources, wake_part[0]])
     causes = np.zeros((count + 1, 2 + count + after + after + 1))
     causes[:count, 0], causes[:count, 1] = -inward.real, -inward.imag
     causes[:count, 2 : 2 + count + after] = -_component(sources, inward) @ outflow
@@ -294,6 +297,20 @@ def between(one: Influence, other: Influence, share: float) -> Influence:
     }
     wake = Wake(mixed(one.wake.x, other.wake.x), mixed(one.wake.y, other.wake.y), one.wake.distance)
     return Influence(wake=wake, **values)
+
+
+def _turn_along(body: _Panels) -> FloatArray:
+    """Angle through which the surface turns along each panel, convex positive. [rad]
+
+    A curved panel's own sources have a velocity across its middle that a straight one's
+    have not: strength times turn over 4 pi, outwards.
+    """
+    corner = np.angle(body.direction[1:] / body.direction[:-1])
+    share = body.length[:-1] / (body.length[:-1] + body.length[1:])
+    turn = np.zeros(len(body.length))
+    turn[:-1] += share * corner
+    turn[1:] += (1.0 - share) * corner
+    return turn
 
 
 def _bisector(body: _Panels) -> ComplexArray:

@@ -11,13 +11,29 @@ import math
 import numba
 
 from solver.section.boundary_layer.closures import growth
+from solver.section.boundary_layer.constants import INITIAL_STRESS, LAG, RELAXING
 from solver.section.boundary_layer.stations import laminar_station, turbulent_station
 
 LAMINAR, TURBULENT, WAKE = 0, 1, 2
 
 
 @numba.njit(cache=True, nogil=True, error_model="numpy")
-def balance(one, two, xi, value, slope, residual, first, second):
+def late_share(r):
+    """Weight of station two in the mean over a cell of r relaxation lengths, and its slope.
+
+    Exponential fitting: exact for a quantity that relaxes linearly, one half for small r
+    and one for large (Liniger and Willoughby, SIAM J. Numer. Anal. 7, 1970).
+    """
+    if r < 0.05:
+        return 0.5 + r / 12.0, 1.0 / 12.0
+    if r > 40.0:
+        return 1.0 - 1.0 / r, 1.0 / (r * r)
+    e = math.exp(-r)
+    return 1.0 / (1.0 - e) - 1.0 / r, 1.0 / (r * r) - e / ((1.0 - e) * (1.0 - e))
+
+
+@numba.njit(cache=True, nogil=True, error_model="numpy")
+def balance(one, two, xi, relaxing, value, slope, residual, first, second):
     """Fill residual and slopes of a cell of one kind.
 
     Parameters
@@ -26,6 +42,9 @@ def balance(one, two, xi, value, slope, residual, first, second):
         States.
     xi : ndarray, shape (2,)
         Places.
+    relaxing : float
+        Relaxation length of the energy shape parameter over theta; 0 weighs both
+        stations alike.
     value : ndarray, shape (2, 6)
         Quantities at both stations.
     slope : ndarray, shape (2, 6, 5)
@@ -42,17 +61,22 @@ def balance(one, two, xi, value, slope, residual, first, second):
     x = math.log(xi[1] / xi[0])
     dxi = xi[1] - xi[0]
     friction = 0.5 * (value[0, 1] + value[1, 1])
-    shape = 0.5 * (value[0, 2] + value[1, 2])
+    late, late_r, r = 0.5, 0.0, 0.0
+    if relaxing > 0.0:
+        r = dxi / (relaxing * math.exp(two[0]))
+        late, late_r = late_share(r)
+    shape = (1.0 - late) * value[0, 2] + late * value[1, 2]
     residual[0] = dt + (2.0 + h) * du - x * friction
     residual[1] = value[1, 0] - value[0, 0] + (1.0 - h) * du - x * shape
     residual[2] = two[3] - one[3] - dxi * 0.5 * (value[0, 3] + value[1, 3])
     for j in range(5):
         first[0, j] = -0.5 * x * slope[0, 1, j]
         second[0, j] = -0.5 * x * slope[1, 1, j]
-        first[1, j] = -slope[0, 0, j] - 0.5 * x * slope[0, 2, j]
-        second[1, j] = slope[1, 0, j] - 0.5 * x * slope[1, 2, j]
+        first[1, j] = -slope[0, 0, j] - (1.0 - late) * x * slope[0, 2, j]
+        second[1, j] = slope[1, 0, j] - late * x * slope[1, 2, j]
         first[2, j] = -0.5 * dxi * slope[0, 3, j]
         second[2, j] = -0.5 * dxi * slope[1, 3, j]
+    second[1, 0] += x * (value[1, 2] - value[0, 2]) * late_r * r
     half1, half2 = 0.5 * h1 * du, 0.5 * h2 * du
     first[0, 0] -= 1.0 + half1
     first[0, 1] += half1
@@ -102,14 +126,14 @@ def cell(kind, one, two, xi, reynolds, constants, work, residual, first, second)
     if kind == LAMINAR:
         cross = work[2]
         laminar_pair(one, two, xi, reynolds, constants, value, slope, cross)
-        balance(one, two, xi, value, slope, residual, first, second)
+        balance(one, two, xi, 0.0, value, slope, residual, first, second)
         first[2, 0] -= 0.5 * (xi[1] - xi[0]) * cross[0]
         first[2, 1] -= 0.5 * (xi[1] - xi[0]) * cross[1]
     else:
         wake = kind == WAKE
         turbulent_station(one, xi[0], reynolds, wake, constants, value[0], slope[0])
         turbulent_station(two, xi[1], reynolds, wake, constants, value[1], slope[1])
-        balance(one, two, xi, value, slope, residual, first, second)
+        balance(one, two, xi, constants[RELAXING], value, slope, residual, first, second)
 
 
 @numba.njit(cache=True, nogil=True, error_model="numpy")
@@ -126,7 +150,7 @@ def transition_cell(
     r_lam, f_lam, s_lam = more[0], more[1], more[2]
     cross = work[2]
     laminar_pair(one, two, xi, reynolds, constants, value, slope, cross)
-    balance(one, two, xi, value, slope, r_lam, f_lam, s_lam)
+    balance(one, two, xi, 0.0, value, slope, r_lam, f_lam, s_lam)
     dxi = xi[1] - xi[0]
     grown = 0.5 * dxi * (value[0, 3] + value[1, 3])
     w = 0.0
@@ -152,7 +176,7 @@ def transition_cell(
             d_second[j] = 0.0
 
     # Turbulent equations; ahead of transition the stress is the initial one.
-    share = math.sqrt(constants[5])
+    share = math.sqrt(constants[INITIAL_STRESS])
     guess = more[5]
     for j in range(3):
         guess[j] = one[j]
@@ -166,7 +190,7 @@ def transition_cell(
             slope[0, q, j] += s_slope * slope[0, 4, j]
         slope[0, q, 3] = 0.0
     turbulent_station(two, xi[1], reynolds, False, constants, value[1], slope[1])
-    balance(guess, two, xi, value, slope, residual, first, second)
+    balance(guess, two, xi, constants[RELAXING], value, slope, residual, first, second)
     for row in range(2):
         first[row, 3] = 0.0
         gap = residual[row] - r_lam[row]
@@ -176,7 +200,7 @@ def transition_cell(
             second[row, j] = (1.0 - w) * s_lam[row, j] + w * second[row, j] + gap * d_second[j]
 
     # Lag from the initial stress, at the place of transition, over the turbulent share.
-    half_lag = (1.0 - share) * 0.5 * constants[6]
+    half_lag = (1.0 - share) * 0.5 * constants[LAG]
     gap_e, gap_l = value[0, 4] - value[1, 4], value[0, 5] - value[1, 5]
     equilibrium = value[1, 4] + w * gap_e
     start = half_lag * math.exp(equilibrium - value[1, 5] - w * gap_l)

@@ -13,14 +13,18 @@ import math
 
 import numba
 
+from solver.section.boundary_layer.constants import (
+    GROWTH_FROM_H,
+    GROWTH_TO_H,
+    SEPARATED_GROWTH,
+)
+
 LEAST_LAMINAR_H = 1.05
 LEAST_TURBULENT_H = 1.02
 """Floors below anything physical, so that slopes never vanish inside the physical range."""
 
-# Places in the array of constants: see :mod:`solver.section.boundary_layer.constants`.
-SEPARATED_GROWTH, GROWTH_FROM_H, GROWTH_TO_H = 0, 1, 2
-DISSIPATION_RISE, DISSIPATION_FROM_H = 3, 4
-INITIAL_STRESS, LAG, EQUILIBRIUM = 5, 6, 7
+LARGEST_SIMILAR_H = 8.8
+"""Of the tabled similar layers with reversed flow."""
 
 
 @numba.njit(cache=True, nogil=True, error_model="numpy")
@@ -84,18 +88,22 @@ def growth(h, rt, constants):
         - 2.0 * (6.54 * h - 14.07) / (h * h * h)
         + 0.058 * (2.0 * d * e - d * d * e * e)
     )
-    if h > 4.0 and constants[13] > 0.0:
-        # Similar layers with reversed flow: half the length is (theta*)^2 of their table.
-        q = 0.05 * d**0.56
-        length = 2.0 * 0.3438 / (1.0 + q * d)
-        length_h = -length * 1.56 * q / (1.0 + q * d)
+    if h > 4.0:
+        # Half the length is (theta*)^2 of similar layers, here those with reversed flow
+        # (Falkner and Skan; fitted to their table within 1 %, held past its end).
+        e = min(d, LARGEST_SIMILAR_H - 4.0)
+        q = 0.05 * e**0.56
+        length = 2.0 * 0.3438 / (1.0 + q * e)
+        length_h = -length * 1.56 * q / (1.0 + q * e) if e == d else 0.0
     slow, slow_h = 1.0, 0.0
-    y = (h - constants[1]) / (constants[2] - constants[1])
+    wide = constants[GROWTH_TO_H] - constants[GROWTH_FROM_H]
+    y = (h - constants[GROWTH_FROM_H]) / wide
     if y >= 1.0:
-        slow = constants[0]
+        slow = constants[SEPARATED_GROWTH]
     elif y > 0.0:
-        slow = 1.0 - (1.0 - constants[0]) * y * y * (3.0 - 2.0 * y)
-        slow_h = -(1.0 - constants[0]) * 6.0 * y * (1.0 - y) / (constants[2] - constants[1])
+        lost = 1.0 - constants[SEPARATED_GROWTH]
+        slow = 1.0 - lost * y * y * (3.0 - 2.0 * y)
+        slow_h = -lost * 6.0 * y * (1.0 - y) / wide
     value = 0.5 * rate * length
     value_h = 0.5 * (rate_h * length + rate * length_h)
     return (

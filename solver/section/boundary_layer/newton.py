@@ -14,6 +14,7 @@ import numba
 import numpy as np
 
 from solver.section.boundary_layer.cells import LAMINAR, TURBULENT, WAKE, cell, transition_cell
+from solver.section.boundary_layer.constants import INITIAL_STRESS
 from solver.section.boundary_layer.stations import turbulent_station
 
 STAGNATION_THETA = 0.0855
@@ -43,25 +44,33 @@ def place_of(node, side, arc, point):
 
 
 @numba.njit(cache=True, nogil=True, error_model="numpy")
-def speeds(base, influence, sheet_influence, sheet, state, stagnation, nodes, out):
-    """Speeds of the potential flow along nodes and wake, for the mass defects of a state."""
+def signed_defects(state, stagnation):
+    """Mass defects of all stations, negative where the flow runs against the nodes."""
     total = state.shape[0]
     signed = np.empty(total)
     for i in range(total):
         m = math.exp(state[i, 1] + state[i, 2])
         signed[i] = -m if i <= stagnation else m
-    for i in range(total):
-        q = base[i]
-        for j in range(total):
-            q += influence[i, j] * signed[j]
-        out[i] = q
-    after = total - nodes
+    return signed
+
+
+@numba.njit(cache=True, nogil=True, error_model="numpy")
+def sheet_strengths(sheet, signed, nodes):
+    """Vortex sheet at the wake's nodes, the trailing edge included."""
+    after = len(signed) - nodes
+    strength = np.empty(after + 1)
     for k in range(after + 1):
         m = signed[nodes - 1] - signed[0] if k == 0 else signed[nodes + k - 1]
-        strength = -sheet[k] * m
-        if strength != 0.0:
-            for i in range(total):
-                out[i] += sheet_influence[i, k] * strength
+        strength[k] = -sheet[k] * m
+    return strength
+
+
+@numba.njit(cache=True, nogil=True, error_model="numpy")
+def speeds(base, influence, sheet_influence, sheet, state, stagnation, nodes, out):
+    """Speeds of the potential flow along nodes and wake, for the mass defects of a state."""
+    signed = signed_defects(state, stagnation)
+    strength = sheet_strengths(sheet, signed, nodes)
+    out[:] = base + np.dot(influence, signed) + np.dot(sheet_influence, strength)
 
 
 @numba.njit(cache=True, nogil=True, error_model="numpy")
@@ -125,7 +134,7 @@ def initial_stress(state, reynolds, constants, work):
     guess = np.empty(4)
     guess[0], guess[1], guess[2], guess[3] = state[0], state[1], state[2], 0.0
     turbulent_station(guess, 1.0, reynolds, False, constants, work[0][1], work[1][1])
-    return work[0][1, 4] + 0.5 * math.log(constants[5])
+    return work[0][1, 4] + 0.5 * math.log(constants[INITIAL_STRESS])
 
 
 @numba.njit(cache=True, nogil=True, error_model="numpy")
@@ -271,12 +280,12 @@ def join(state, amplification, critical, ends, laminar, nodes, reynolds, constan
         edge[side, 1, node] += 1.0 / m
         if laminar[side]:
             # The stress goes as the square of the waves' amplitude, exp(n).
-            lacking = (critical - amplification[node]) * constants[12]
+            lacking = critical - amplification[node]
             ln_s = initial_stress(state[node], reynolds, constants, work)
             follows = 0.0 < lacking < 4.0
             ln_s -= min(max(lacking, 0.0), 4.0)
             for j in range(total + 2):
-                x = constants[12] * ends[side, 2, j] if follows else 0.0
+                x = ends[side, 2, j] if follows else 0.0
                 for q in range(3):
                     x += work[1][1, 4, q] * edge[side, q, j]
                 edge[side, 3, j] = x

@@ -7,6 +7,7 @@ import math
 import numba
 import numpy as np
 
+from solver.section.boundary_layer.constants import WAKE_CURVATURE, WAKE_SMOOTHING
 from solver.section.boundary_layer.newton import (
     EXPLICIT,
     LEAST_SPEED,
@@ -18,18 +19,23 @@ from solver.section.boundary_layer.newton import (
     scratch,
     side_length,
     side_node,
+    sheet_strengths,
+    signed_defects,
     speeds,
 )
 
 LARGEST_THICKENING, LARGEST_SPEEDING = 0.6, 0.4
 """Share by which theta and dstar, and the speed, may change in an iteration."""
 LARGEST_GROWTH = 1.5
+"""Change of the amplification factor in an iteration."""
+SHARPEST_TURN = 0.02
+"""Least length, each way, over which the wake's curvature is taken."""
 LARGEST_SHIFT = 2
 """Panels over which the stagnation point may move in an iteration."""
 
 
 @numba.njit(cache=True, nogil=True, error_model="numpy")
-def _wake_sheet(state, nodes, distance, middle_angle, kappa_scale, span, sheet):
+def _wake_sheet(state, nodes, distance, middle_angle, constants, sheet):
     """Strength of the wake's vortex sheet for each unit of mass defect."""
     after = state.shape[0] - nodes
     count = len(middle_angle)
@@ -42,34 +48,26 @@ def _wake_sheet(state, nodes, distance, middle_angle, kappa_scale, span, sheet):
         else:
             t, d = math.exp(state[nodes + k - 1, 0]), math.exp(state[nodes + k - 1, 1])
         h = d / t
-        half = max(0.02, span * (t + d))
+        half = max(SHARPEST_TURN, constants[WAKE_SMOOTHING] * (t + d))
         low = min(max(here - half, middle[0]), middle[count - 1])
         high = min(max(here + half, middle[0]), middle[count - 1])
         turned = np.interp(high, middle, middle_angle) - np.interp(low, middle, middle_angle)
         kappa = turned / (2.0 * half)
         fade = 1.0 if h < 2.5 else (2.5 / h) ** 3
-        sheet[k] = kappa_scale * kappa * (1.0 + min(h, 2.5)) / h * fade
+        sheet[k] = constants[WAKE_CURVATURE] * kappa * (1.0 + min(h, 2.5)) / h * fade
 
 
 @numba.njit(cache=True, nogil=True, error_model="numpy")
 def wake_angles(base, defect, sheet_influence, sheet, state, stagnation, nodes, speed, path, out):
     """Direction of the flow midway along each wake panel."""
-    total = state.shape[0]
-    after = total - nodes
-    signed = np.empty(total)
-    for i in range(total):
-        m = math.exp(state[i, 1] + state[i, 2])
-        signed[i] = -m if i <= stagnation else m
+    after = state.shape[0] - nodes
+    signed = signed_defects(state, stagnation)
+    strength = sheet_strengths(sheet, signed, nodes)
+    across = base + np.dot(defect, signed) + np.dot(sheet_influence, strength)
     for i in range(after):
-        v = base[i]
-        for j in range(total):
-            v += defect[i, j] * signed[j]
-        for k in range(after + 1):
-            m = signed[nodes - 1] - signed[0] if k == 0 else signed[nodes + k - 1]
-            v -= sheet_influence[i, k] * sheet[k] * m
         left = speed[nodes - 1] if i == 0 else speed[nodes + i - 1]
         u = 0.5 * (left + speed[nodes + i])
-        out[i] = path[i] + math.atan2(v, max(u, 0.05))
+        out[i] = path[i] + math.atan2(across[i], max(u, 0.05))
 
 
 @numba.njit(cache=True, nogil=True, error_model="numpy")
@@ -77,12 +75,13 @@ def _assemble(influence, sheet_influence, sheet, state, stagnation, point, arc, 
               speed, matrix, right):  # fmt: skip
     """Matrix and right-hand side for the changes of mass defect and stagnation point."""
     total = state.shape[0]
+    side = np.ones(total)
+    side[: stagnation + 1] = -1.0
     for i in range(total):
         u = math.exp(state[i, 2])
-        s = -1.0 if i <= stagnation else 1.0
+        s = side[i]
         for j in range(total):
-            sign = -1.0 if j <= stagnation else 1.0
-            matrix[i, j] = u * rows[i, j] - s * influence[i, j] * sign
+            matrix[i, j] = u * rows[i, j] - s * influence[i, j] * side[j]
         matrix[i, total] = u * rows[i, total]
         right[i] = s * speed[i] - u - u * rows[i, total + 1]
         for k in range(total - nodes + 1):
@@ -236,10 +235,10 @@ def solve_point(
         speeds(base, influence, sheet_influence, sheet, state, stagnation, nodes, speed)
         stagnation, point = _relocate(state, speed, stagnation, arc, nodes, reynolds)
         moved = 0.0
-        if constants[8] > 0.0 and iteration < 40:
+        if constants[WAKE_CURVATURE] > 0.0:
             wake_angles(normal_base, normal_defect, normal_sheet, sheet, state, stagnation, nodes,
                         speed, path_angle, angles)  # fmt: skip
-            _wake_sheet(state, nodes, distance, angles, constants[8], constants[10], fresh)
+            _wake_sheet(state, nodes, distance, angles, constants, fresh)
             # Aitken's relaxation of the lagged sheet.
             top = bottom = 0.0
             for k in range(total - nodes + 1):
@@ -271,11 +270,11 @@ def solve_point(
             return 2, iteration, largest
         _assemble(influence, sheet_influence, sheet, state, stagnation, point, arc, nodes, rows,
                   speed, matrix, right)  # fmt: skip
-        if not (np.isfinite(matrix).all() and np.isfinite(right).all()):
+        if not (math.isfinite(matrix.sum()) and math.isfinite(right.sum())):
             return 2, iteration, largest
         change = np.linalg.solve(matrix, right)
         _back_substitute(change, saved, first_rows, stagnation, nodes, delta)
-        if not np.isfinite(delta).all():
+        if not math.isfinite(delta.sum()):
             return 2, iteration, largest
         if iteration > 10 and iteration % 6 == 0:
             # A limit cycle: the last six steps are no smaller than the six before them.

@@ -21,11 +21,17 @@ from solver.section.boundary_layer.closures import (
     turbulent_energy,
     turbulent_friction,
 )
+from solver.section.boundary_layer.constants import (
+    DISSIPATION_FROM_H,
+    DISSIPATION_RISE,
+    DISSIPATION_SPAN,
+    EQUILIBRIUM,
+    INNER_LAYER,
+    LAG,
+)
 
-# Rows of what a station yields.
-ENERGY, FRICTION, SHAPE, RATE, EQUILIBRIUM, LAYER = 0, 1, 2, 3, 4, 5
-"""ln Hs; xi cf/(2 theta); xi (2 CD/Hs - cf/2)/theta; da/dxi; ln S_eq; ln delta."""
-QUANTITIES = 6
+# Rows of what a station yields: ln Hs; xi cf/(2 theta); xi (2 CD/Hs - cf/2)/theta; da/dxi;
+# and in turbulent layers ln S_eq; ln delta.
 FULLEST_WALL_H, FULLEST_WAKE_H = 1.25, 1.06
 """Below these no turbulent layer is known: the energy shape parameter is bent upwards there,
 so that H has a value for any acceleration and never comes to its floor."""
@@ -109,8 +115,12 @@ def turbulent_station(state, xi, reynolds, wake, constants, value, slope):
     if not wake:
         cf, cf_h, cf_r = turbulent_friction(h, rt)
     many, many_h = 1.0, 0.0
-    if h > constants[4]:
-        many, many_h = 1.0 + constants[3] * (h - constants[4]), constants[3]
+    over = h - constants[DISSIPATION_FROM_H]
+    if over > 0.0:
+        span = constants[DISSIPATION_SPAN]
+        e = math.exp(-over / span)
+        many = 1.0 + constants[DISSIPATION_RISE] * span * (1.0 - e)
+        many_h = constants[DISSIPATION_RISE] * e
     sheets = 2.0 if wake else 1.0
     raw = cf * us + s * s * (1.0 - us)
     raw_h = cf_h * us + cf * us_h - s * s * us_h
@@ -134,13 +144,13 @@ def turbulent_station(state, xi, reynolds, wake, constants, value, slope):
     slope[2, 4] = (e - cf) / theta
 
     # ln S_eq
-    inner = constants[11] / rt
+    inner = constants[INNER_LAYER] / rt
     outer = h - 1.0 - inner
     outer_h, outer_r = 1.0, inner
     if outer < 0.2 * (h - 1.0):
         outer, outer_h, outer_r = 0.2 * (h - 1.0), 0.2, 0.0
     value[4] = 0.5 * math.log(
-        constants[7] * hs * (h - 1.0) * outer * outer / ((1.0 - us) * h**3)
+        constants[EQUILIBRIUM] * hs * (h - 1.0) * outer * outer / ((1.0 - us) * h**3)
     )
     _spread(
         slope[4],
@@ -160,7 +170,7 @@ def turbulent_station(state, xi, reynolds, wake, constants, value, slope):
     slope[5, 0] += 1.0
     value[5] = state[0] + math.log(thick)
     # d ln S/d xi
-    lag = 0.5 * constants[6] / (theta * thick)
+    lag = 0.5 * constants[LAG] / (theta * thick)
     seq = math.exp(value[4])
     value[3] = lag * (seq - s)
     for j in range(5):
