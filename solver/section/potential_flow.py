@@ -300,7 +300,7 @@ def between(one: Influence, other: Influence, share: float) -> Influence:
 
 
 def _turn_along(body: _Panels) -> FloatArray:
-    """Angle through which the surface turns along each panel, convex positive. [rad]
+    """Find the angle through which the surface turns along each panel, convex positive [rad].
 
     A curved panel's own sources have a velocity across its middle that a straight one's
     have not: strength times turn over 4 pi, outwards.

@@ -28,6 +28,9 @@ LARGEST_THICKENING, LARGEST_SPEEDING = 0.6, 0.4
 """Share by which theta and dstar, and the speed, may change in an iteration."""
 LARGEST_GROWTH = 1.5
 """Change of the amplification factor in an iteration."""
+AT_REST, SHEET_AT_REST = 2e-4, 3e-5
+"""Largest change, as a share, of the last iteration, which squares it; and of the lagged
+wake sheet, over the free stream."""
 SHARPEST_TURN = 0.02
 """Least length, each way, over which the wake's curvature is taken."""
 LARGEST_SHIFT = 2
@@ -227,7 +230,7 @@ def solve_point(
     angles = np.empty(total - nodes)
     fresh = np.empty(total - nodes + 1)
     stagnation, point = int(place[0]), place[1]
-    largest, mix = 1.0, 0.5
+    largest, mix = 1.0, 1.0
     earliest = 1e30
     gap_before = np.zeros(total - nodes + 1)
     damping_limit = 1.0
@@ -249,7 +252,7 @@ def solve_point(
             if iteration > 0 and bottom > 0.0 and largest < 0.5:
                 mix = min(max(-mix * top / bottom, 0.15), 1.5)
             else:
-                mix = 0.5
+                mix = 1.0
             for k in range(total - nodes + 1):
                 m = math.exp(state[max(nodes + k - 1, nodes), 1])
                 moved = max(moved, abs(gap_before[k]) * m)
@@ -289,6 +292,6 @@ def solve_point(
         history[iteration, 3] = turbulent_from[0]
         history[iteration, 4] = turbulent_from[1]
         place[0], place[1] = stagnation, point
-        if largest < 1e-4 and moved < 1e-5:
+        if largest < AT_REST and moved < SHEET_AT_REST:
             return 0, iteration + 1, largest
     return 1, iterations, largest
