@@ -4,22 +4,31 @@ from __future__ import annotations
 
 import numpy as np
 
-from solver.section.boundary_layer import closures as kernels
-from tests.solver.section import second_closures, second_residual
-from tests.solver.section.second_closures import Closures
+from solver.section.boundary_layer.constants import ClosureConstants
+from tests.solver.section import second_residual
+from tests.solver.section.second_closures import EQUILIBRIUM, INITIAL_SHEAR, Closures
 
-CHOSEN = Closures(ramp="smooth", falling="before")
+CHOSEN = Closures()
 """What the kernels are made to do."""
 
 
+def chosen_constants() -> ClosureConstants:
+    """Name the constants of `CHOSEN` as the kernels do; the coupling's are left alone."""
+    return ClosureConstants(
+        separated_growth=CHOSEN.separated_growth,
+        growth_from_h=3.5,
+        growth_to_h=4.5,
+        dissipation_rise=CHOSEN.dissipation_rise,
+        dissipation_from_h=CHOSEN.dissipation_from,
+        dissipation_span=CHOSEN.dissipation_span,
+        initial_stress=INITIAL_SHEAR,
+        lag=second_residual.LAG_CONSTANT,
+        equilibrium=EQUILIBRIUM,
+        inner_layer=CHOSEN.inner_layer,
+        relaxing=CHOSEN.relaxing,
+    )
+
+
 def constants() -> np.ndarray:
-    """Lay out the constants of `CHOSEN` for the kernels."""
-    values = np.zeros(16)
-    values[kernels.SEPARATED_GROWTH] = CHOSEN.separated_growth
-    values[kernels.GROWTH_FROM_H], values[kernels.GROWTH_TO_H] = 3.5, 4.5
-    values[kernels.DISSIPATION_RISE] = CHOSEN.extra_dissipation
-    values[kernels.DISSIPATION_FROM_H] = 2.5
-    values[kernels.INITIAL_STRESS] = second_closures.INITIAL_SHEAR
-    values[kernels.LAG] = second_residual.LAG_CONSTANT
-    values[kernels.EQUILIBRIUM] = 0.015
-    return values
+    """Lay the constants of `CHOSEN` out for the kernels."""
+    return chosen_constants().as_array()

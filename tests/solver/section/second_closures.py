@@ -20,10 +20,13 @@ Array = NDArray[np.float64]
 INITIAL_SHEAR = 0.7
 """Square of the ratio of the turbulent stress at transition to that in equilibrium."""
 
+EQUILIBRIUM = 0.015
+"""Of the stress coefficient in equilibrium."""
+
 
 @dataclass(frozen=True)
 class Closures:
-    """What may be changed in the closure relations.
+    """What is not as published in the closure relations and the cells made of them.
 
     Parameters
     ----------
@@ -31,21 +34,54 @@ class Closures:
         Factor on the growth of disturbances in separated profiles; 1 is as published.
     ramp : {"linear", "smooth"}
         How that factor comes in between H of 3.5 and 4.5.
-    extra_dissipation : float
-        Relative rise of the turbulent dissipation for each unit of H above 2.5; 0 is as
-        published.
     falling : {"own", "before"}
         Where H falls along a cell, disturbances grow at its end with the H there, or
         still with that at its beginning.
+    reversed_length : bool
+        Whether disturbances in profiles with reversed flow grow along layers that are
+        as thick as those similar ones; if not, as the published fits have it, which
+        end at separation.
+    dissipation_rise, dissipation_from, dissipation_span : float
+        Rise of the turbulent dissipation for each unit of H above a beginning, at
+        first; it comes to an end over a span. A rise of 0 is as published.
+    inner_layer : float
+        What the inner layer takes from H - 1 in the stress in equilibrium, times Rt;
+        0 is as published.
+    fullest : bool
+        Whether the energy shape parameter of turbulent layers rises below what H is
+        known to have.
+    relaxing : float
+        Length, in theta, over which the shape of turbulent layers relaxes, for the
+        weights of both ends of a cell; 0 is the plain mean.
+    waves_at_edge : bool
+        Whether a side that is laminar to its end begins the wake with what stress its
+        waves have grown to; if not, with that of a layer at transition.
     """
 
-    separated_growth: float = 0.6
-    ramp: Literal["linear", "smooth"] = "linear"
-    extra_dissipation: float = 0.1
-    falling: Literal["own", "before"] = "own"
+    separated_growth: float = 0.74
+    ramp: Literal["linear", "smooth"] = "smooth"
+    falling: Literal["own", "before"] = "before"
+    reversed_length: bool = True
+    dissipation_rise: float = 0.3
+    dissipation_from: float = 1.8
+    dissipation_span: float = 1.0
+    inner_layer: float = 18.0
+    fullest: bool = True
+    relaxing: float = 5.0
+    waves_at_edge: bool = True
 
 
-PUBLISHED = Closures(separated_growth=1.0, extra_dissipation=0.0)
+PUBLISHED = Closures(
+    separated_growth=1.0,
+    ramp="linear",
+    falling="own",
+    reversed_length=False,
+    dissipation_rise=0.0,
+    inner_layer=0.0,
+    fullest=False,
+    relaxing=0.0,
+    waves_at_edge=False,
+)
 
 
 # Laminar layer
@@ -98,6 +134,15 @@ def pressure_function(H: Array) -> Array:
     return np.asarray(0.058 * (H - 4.0) ** 2 / (H - 1.0) - 0.068)
 
 
+def growth_length(H: Array, closures: Closures = PUBLISHED) -> Array:
+    """Find (m + 1) l / 2, the square of theta in the variables of similar layers."""
+    fitted = 0.5 * (pressure_function(H) + length_function(H))
+    if not closures.reversed_length:
+        return np.asarray(fitted)
+    beyond = np.clip(H, 4.0, 8.8) - 4.0  # 8.8 ends the table of layers with reversed flow
+    return np.asarray(np.where(H > 4.0, 0.3438 / (1.0 + 0.05 * beyond**1.56), fitted))
+
+
 def switched_on(Rt: Array, critical: Array) -> Array:
     """Cubic ramp of the growth about the critical Rt, 0.08 in log10 either way."""
     t = np.clip((np.log10(Rt / critical) + 0.08) / 0.16, 0.0, 1.0)
@@ -106,7 +151,7 @@ def switched_on(Rt: Array, critical: Array) -> Array:
 
 def growth_rate(H: Array, theta: Array, Rt: Array, closures: Closures) -> Array:
     """Find dn/dxi."""
-    along = 0.5 * (pressure_function(H) + length_function(H)) / theta
+    along = growth_length(H, closures) / theta
     start = switched_on(Rt, critical_reynolds(H))
     t = np.clip(H - 3.5, 0.0, 1.0)
     if closures.ramp == "smooth":
@@ -125,7 +170,9 @@ def turbulent_friction(H: Array, Rt: Array) -> Array:
     return np.asarray(wall + 0.00011 * (np.tanh(4.0 - H / 0.875) - 1.0))
 
 
-def turbulent_energy_shape(H: Array, Rt: Array) -> Array:
+def turbulent_energy_shape(
+    H: Array, Rt: Array, closures: Closures = PUBLISHED, *, wake: bool = False
+) -> Array:
     R = np.maximum(Rt, 200.0)
     H0 = np.where(R < 400.0, 4.0, 3.0 + 400.0 / R)
     base = 1.505 + 4.0 / R
@@ -133,7 +180,11 @@ def turbulent_energy_shape(H: Array, Rt: Array) -> Array:
     over = np.maximum(H - H0, 0.0)
     log = np.log(R)
     beyond = over**2 * (0.04 / H + 0.007 * log / (over + 4.0 / log) ** 2)
-    return np.asarray(base + np.where(H < H0, under, beyond))
+    shape = base + np.where(H < H0, under, beyond)
+    if closures.fullest:
+        short = np.maximum((1.06 if wake else 1.25) - H, 0.0)
+        shape = shape + 0.1 * short**2 / (H - 1.0)
+    return np.asarray(shape)
 
 
 def slip_speed(H: Array, Hs: Array, *, wake: bool) -> Array:
@@ -145,26 +196,30 @@ def layer_thickness(H: Array, theta: Array, dstar: Array) -> Array:
     return np.asarray(np.minimum(theta * (3.15 + 1.72 / (H - 1.0)) + dstar, 12.0 * theta))
 
 
-def equilibrium_shear(H: Array, Rt: Array, *, wake: bool = False) -> Array:
+def equilibrium_shear(
+    H: Array, Rt: Array, closures: Closures = PUBLISHED, *, wake: bool = False
+) -> Array:
     """Find S_eq, the square root of the shear stress coefficient in equilibrium."""
-    Hs = turbulent_energy_shape(H, Rt)
+    Hs = turbulent_energy_shape(H, Rt, closures, wake=wake)
     slip = slip_speed(H, Hs, wake=wake)
-    return np.asarray(np.sqrt(0.015 * Hs * (H - 1.0) ** 3 / ((1.0 - slip) * H**3)))
+    outer = np.maximum(H - 1.0 - closures.inner_layer / Rt, 0.2 * (H - 1.0))
+    return np.asarray(np.sqrt(EQUILIBRIUM * Hs * (H - 1.0) / (1.0 - slip) / H**3) * outer)
 
 
 def turbulent_dissipation(
     H: Array, Rt: Array, shear: Array, closures: Closures, *, wake: bool = False
 ) -> Array:
     """Find 2 CD / Hs."""
-    Hs = turbulent_energy_shape(H, Rt)
+    Hs = turbulent_energy_shape(H, Rt, closures, wake=wake)
     slip = slip_speed(H, Hs, wake=wake)
     friction = np.zeros_like(H) if wake else turbulent_friction(H, Rt)
     CD = 0.5 * friction * slip + shear**2 * (1.0 - slip)
-    CD = CD * (1.0 + closures.extra_dissipation * np.maximum(H - 2.5, 0.0))
+    spans = np.maximum(H - closures.dissipation_from, 0.0) / closures.dissipation_span
+    most = closures.dissipation_rise * closures.dissipation_span
     halves = 2.0 if wake else 1.0
-    return np.asarray(2.0 * halves * CD / Hs)
+    return np.asarray(2.0 * halves * CD * (1.0 - most * np.expm1(-spans)) / Hs)
 
 
-def initial_shear(H: Array, Rt: Array) -> Array:
+def initial_shear(H: Array, Rt: Array, closures: Closures = PUBLISHED) -> Array:
     """Find S where the layer becomes turbulent."""
-    return np.asarray(np.sqrt(INITIAL_SHEAR) * equilibrium_shear(H, Rt))
+    return np.asarray(np.sqrt(INITIAL_SHEAR) * equilibrium_shear(H, Rt, closures))

@@ -92,14 +92,28 @@ def _momentum(side: Side, friction: Array) -> Array:
     return np.asarray(np.diff(np.log(side.theta)) + (2.0 + _mean(H)) * faster - pull)
 
 
-def _shape(side: Side, energy_shape: Array, dissipation: Array, friction: Array) -> Array:
+def late_weight(side: Side, closures: Closures) -> Array:
+    """Weight of a cell's end in what a layer's shape relaxes by, 1/2 for short cells.
+
+    Exact for a linear relaxation (W. Liniger, R. A. Willoughby, SIAM J. Numer. Anal. 7,
+    1970).
+    """
+    if closures.relaxing == 0.0:
+        return np.full(len(side.xi) - 1, 0.5)
+    lengths = np.diff(side.xi) / (closures.relaxing * side.theta[1:])
+    return np.asarray(-1.0 / np.expm1(-lengths) - 1.0 / lengths)
+
+
+def _shape(
+    side: Side, energy_shape: Array, dissipation: Array, friction: Array, late: Array | float = 0.5
+) -> Array:
     H = side.dstar / side.theta
     loss = side.xi * (dissipation - 0.5 * friction) / side.theta
     faster = np.diff(np.log(side.ue))
     return np.asarray(
         np.diff(np.log(energy_shape))
         + (1.0 - _mean(H)) * faster
-        - np.diff(np.log(side.xi)) * _mean(loss)
+        - np.diff(np.log(side.xi)) * (loss[:-1] + late * np.diff(loss))
     )
 
 
@@ -163,23 +177,61 @@ def wall_residuals(
     chosen = closures or Closures()
     H, Rt = side.dstar / side.theta, reynolds * side.ue * side.theta
     share = turbulent_share(side, critical=critical, trip=trip)
-    ahead = np.append(share < 1.0, share[-1] == 0.0)
-    side = replace(side, shear=np.where(ahead, initial_shear(H, Rt), side.shear))
+    side = begun(side, reynolds=reynolds, critical=critical, trip=trip, closures=chosen)
     friction = laminar_friction(H, Rt), turbulent_friction(H, Rt)
-    energy = laminar_energy_shape(H), turbulent_energy_shape(H, Rt)
+    energy = laminar_energy_shape(H), turbulent_energy_shape(H, Rt, chosen)
     dissipation = (
         laminar_dissipation(H, Rt),
         turbulent_dissipation(H, Rt, side.shear, chosen),
     )
     momentum = [_momentum(side, one) for one in friction]
-    shape = [_shape(side, *one) for one in zip(energy, dissipation, friction, strict=True)]
+    late = 0.5, late_weight(side, chosen)
+    shape = [_shape(side, *one) for one in zip(energy, dissipation, friction, late, strict=True)]
     return Residuals(
         momentum=_blend(share, *momentum),
         shape=_blend(share, *shape),
         growth=np.where(share < 1.0, _growth(side, Rt, chosen), np.nan),
-        lag=np.where(share > 0.0, _lag(side, Rt, wake=False, share=share), np.nan),
+        lag=np.where(share > 0.0, _lag(side, Rt, chosen, wake=False, share=share), np.nan),
         turbulent=share,
     )
+
+
+def begun(
+    side: Side,
+    *,
+    reynolds: float,
+    critical: float,
+    trip: float | None = None,
+    closures: Closures | None = None,
+) -> Side:
+    """Give the stations ahead of transition the stress that turbulence would begin with.
+
+    Parameters
+    ----------
+    side : Side
+        Without the stagnation point.
+    reynolds : float
+        Of the chord.
+    critical : float
+        Amplification at transition.
+    trip : float, optional
+        Place xi of forced transition.
+    closures : Closures, optional
+
+    Returns
+    -------
+    Side
+        Where it is laminar to its end, the stress there is less: it goes as the square
+        of the waves, e^n, and they lack what n lacks; four at the most.
+    """
+    chosen = closures or Closures()
+    share = turbulent_share(side, critical=critical, trip=trip)
+    laminar = np.append(share < 1.0, share[-1] == 0.0)
+    stress = initial_shear(side.dstar / side.theta, reynolds * side.ue * side.theta, chosen)
+    shear = np.where(laminar, stress, side.shear)
+    if laminar[-1] and chosen.waves_at_edge:
+        shear[-1] *= np.exp(-np.clip(critical - side.amplification[-1], 0.0, 4.0))
+    return replace(side, shear=shear)
 
 
 def wake_residuals(wake: Side, *, reynolds: float, closures: Closures | None = None) -> Residuals:
@@ -201,13 +253,13 @@ def wake_residuals(wake: Side, *, reynolds: float, closures: Closures | None = N
     chosen = closures or Closures()
     H, Rt = wake.dstar / wake.theta, reynolds * wake.ue * wake.theta
     dissipation = turbulent_dissipation(H, Rt, wake.shear, chosen, wake=True)
-    none = np.zeros_like(H)
+    energy, none = turbulent_energy_shape(H, Rt, chosen, wake=True), np.zeros_like(H)
     cells = len(H) - 1
     return Residuals(
         momentum=_momentum(wake, none),
-        shape=_shape(wake, turbulent_energy_shape(H, Rt), dissipation, none),
+        shape=_shape(wake, energy, dissipation, none, late_weight(wake, chosen)),
         growth=np.full(cells, np.nan),
-        lag=_lag(wake, Rt, wake=True),
+        lag=_lag(wake, Rt, chosen, wake=True),
         turbulent=np.ones(cells),
     )
 
@@ -227,13 +279,15 @@ def _growth(side: Side, Rt: Array, closures: Closures) -> Array:
     return np.asarray(np.diff(side.amplification) - np.diff(side.xi) * rate)
 
 
-def _lag(side: Side, Rt: Array, *, wake: bool, share: Array | None = None) -> Array:
+def _lag(
+    side: Side, Rt: Array, closures: Closures, *, wake: bool, share: Array | None = None
+) -> Array:
     """Begin where transition falls: there the logarithms of what is needed lie between."""
     H = side.dstar / side.theta
     if share is None:
         share = np.ones(len(H) - 1)
     thickness = np.log(layer_thickness(H, side.theta, side.dstar) * (0.5 if wake else 1.0))
-    wanted = np.log(equilibrium_shear(H, Rt, wake=wake))
+    wanted = np.log(equilibrium_shear(H, Rt, closures, wake=wake))
     initial = 0.5 * np.log(INITIAL_SHEAR) + wanted[1:] - share * np.diff(wanted)
     first = np.where(share < 1.0, initial, np.log(side.shear[:-1]))
     rates = [
@@ -263,7 +317,10 @@ def stagnation_theta(xi: Array, ue: Array, *, reynolds: float) -> Array:
 
 
 def joined(upper: Side, lower: Side, *, gap: float = 0.0) -> tuple[float, float, float, float]:
-    """What the wake starts with: theta, dstar, ue and S from the last stations of both sides."""
+    """What the wake starts with: theta, dstar, ue and S from the last stations of both sides.
+
+    Both as :func:`begun` leaves them, if they may be laminar to their ends.
+    """
     theta = upper.theta[-1] + lower.theta[-1]
     dstar = upper.dstar[-1] + lower.dstar[-1] + gap
     ue = 0.5 * (upper.ue[-1] + lower.ue[-1])

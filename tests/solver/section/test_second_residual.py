@@ -27,9 +27,8 @@ def similar_layer(H: float, xi: np.ndarray) -> Side:
     return Side(xi, theta, H * theta, ue, np.zeros_like(xi), np.full_like(xi, 0.03))
 
 
-def turbulent_layer(cells: int, *, wake: bool) -> Side:
+def turbulent_layer(cells: int, *, wake: bool, chosen: Closures) -> Side:
     """Turbulent layer in a rising pressure, from its ordinary differential equations."""
-    chosen = Closures()
 
     def slopes(xi: float, state: np.ndarray) -> list[float]:
         theta, H, shear = (np.array(one) for one in state)
@@ -40,7 +39,8 @@ def turbulent_layer(cells: int, *, wake: bool) -> Side:
 
         def energy(d_shape: float, d_log: float) -> float:
             factor = np.exp(d_log)
-            return float(closures.turbulent_energy_shape(H + d_shape, Rt * factor))
+            moved = H + d_shape, Rt * factor
+            return float(closures.turbulent_energy_shape(*moved, chosen, wake=wake))
 
         step = 1e-6
         by_shape = (energy(step, 0.0) - energy(-step, 0.0)) / (2.0 * step)
@@ -49,7 +49,7 @@ def turbulent_layer(cells: int, *, wake: bool) -> Side:
         rise = energy(0.0, 0.0) * ((loss - 0.5 * friction) / theta - (1.0 - H) / ue * change)
         bent = (rise - by_log * (thicker / theta + change / ue)) / by_shape
         delta = closures.layer_thickness(H, theta, H * theta) * (0.5 if wake else 1.0)
-        wanted = closures.equilibrium_shear(H, Rt, wake=wake)
+        wanted = closures.equilibrium_shear(H, Rt, chosen, wake=wake)
         return [float(thicker), float(bent), float(shear * 2.1 / delta * (wanted - shear))]
 
     xi = np.linspace(0.3, 1.0, cells + 1)
@@ -89,15 +89,16 @@ def _ends(side: Side) -> tuple[np.ndarray, np.ndarray]:
     return side.theta[ends], REYNOLDS * side.ue[ends] * side.theta[ends]
 
 
+@pytest.mark.parametrize("chosen", [PUBLISHED, Closures()], ids=["published", "chosen"])
 @pytest.mark.parametrize("wake", [False, True])
-def test_little_is_left_of_a_turbulent_layer_and_less_with_more_cells(wake):
+def test_little_is_left_of_a_turbulent_layer_and_less_with_more_cells(wake, chosen):
     largest = []
     for cells in (40, 80, 160):
-        layer = turbulent_layer(cells, wake=wake)
+        layer = turbulent_layer(cells, wake=wake, chosen=chosen)
         if wake:
-            found = second.wake_residuals(layer, reynolds=REYNOLDS)
+            found = second.wake_residuals(layer, reynolds=REYNOLDS, closures=chosen)
         else:
-            found = second.wall_residuals(layer, reynolds=REYNOLDS, critical=9.0)
+            found = second.wall_residuals(layer, reynolds=REYNOLDS, critical=9.0, closures=chosen)
         assert np.all(np.isnan(found.growth))
         largest.append([np.max(np.abs(one)) for one in (found.momentum, found.shape, found.lag)])
     # Means over a cell of width h leave h cubed; the layer itself is good to 1e-10.
@@ -117,7 +118,7 @@ def test_the_cell_with_transition_is_shared():
     found = second.wall_residuals(side, reynolds=REYNOLDS, critical=9.0)
     late = second.wall_residuals(side, reynolds=REYNOLDS, critical=20.0)
     H, Rt = np.full(5, 2.5), REYNOLDS * side.theta
-    initial = closures.initial_shear(H, Rt)
+    initial = closures.initial_shear(H, Rt, Closures())
     begun = replace(side, shear=np.where(np.arange(5) < 3, initial, side.shear))
     early = second.wall_residuals(begun, reynolds=REYNOLDS, critical=1.0)
     for name in ("momentum", "shape"):
@@ -128,30 +129,97 @@ def test_the_cell_with_transition_is_shared():
     assert np.isnan(found.growth).tolist() == [False, False, False, True]
 
 
-def test_the_changes_to_the_closures_act_only_where_they_should():
-    H, ones = np.array([2.4, 3.4, 4.0, 4.6]), np.ones(4)
-    Rt = 2000.0 * ones
-    published = closures.growth_rate(H, ones, Rt, PUBLISHED)
-    for ramp, middle in (("linear", 0.8), ("smooth", 0.8)):
-        slower = closures.growth_rate(H, ones, Rt, Closures(ramp=ramp))
-        assert slower / published == pytest.approx([1.0, 1.0, middle, 0.6])
-    quarter = np.array([3.75])
-    factors = [
-        closures.growth_rate(quarter, ones[:1], Rt[:1], Closures(ramp=ramp))
-        / closures.growth_rate(quarter, ones[:1], Rt[:1], PUBLISHED)
-        for ramp in ("linear", "smooth")
+def test_separated_growth_comes_in_by_its_ramp():
+    H, Rt, one = np.array([3.4, 3.75, 4.0, 4.6]), np.full(4, 2000.0), np.ones(4)
+    published = closures.growth_rate(H, one, Rt, PUBLISHED)
+    for ramp, quarter in (("linear", 1.0 / 4.0), ("smooth", 5.0 / 32.0)):
+        changed = replace(PUBLISHED, separated_growth=0.6, ramp=ramp)
+        slower = closures.growth_rate(H, one, Rt, changed) / published
+        assert slower == pytest.approx([1.0, 1.0 - 0.4 * quarter, 0.8, 0.6])
+
+
+def test_disturbances_in_reversed_flow_grow_along_thinner_layers():
+    H = np.array([2.4, 4.0, 5.0, 8.8, 12.0])
+    one, Rt = np.ones(5), np.full(5, 2000.0)
+    changed = replace(PUBLISHED, reversed_length=True)
+    published, thinner = (closures.growth_length(H, one) for one in (PUBLISHED, changed))
+    assert thinner[:2] == pytest.approx(published[:2], rel=1e-4)  # 0.3438 has four digits
+    assert thinner[2] == pytest.approx(0.3438 / 1.05)
+    assert thinner[3] == thinner[4] < published[3]
+    faster = closures.growth_rate(H, one, Rt, changed) / closures.growth_rate(H, one, Rt, PUBLISHED)
+    assert faster == pytest.approx(thinner / published)
+
+
+@pytest.mark.parametrize("wake", [False, True])
+def test_dissipation_rises_with_separation_and_no_further(wake):
+    H = np.array([1.7, 1.8001, 2.8, 40.0])
+    Rt, shear = np.full(4, 2000.0), np.full(4, 0.1)
+    changed = replace(PUBLISHED, dissipation_rise=0.3)
+    more, plain = (
+        closures.turbulent_dissipation(H, Rt, shear, one, wake=wake) for one in (changed, PUBLISHED)
+    )
+    wanted = [1.0, 1.00003, 1.0 + 0.3 * (1.0 - np.exp(-1.0)), 1.3]
+    assert more / plain == pytest.approx(wanted, abs=1e-8)
+
+
+def test_the_inner_layer_takes_stress_where_it_is_thick():
+    H, Rt = np.array([1.4, 1.4, 2.5]), np.array([1e9, 180.0, 50.0])
+    changed = replace(PUBLISHED, inner_layer=18.0)
+    share = closures.equilibrium_shear(H, Rt, changed) / closures.equilibrium_shear(H, Rt)
+    # 18/Rt of H - 1 is nothing, a quarter, 0.24.
+    assert share == pytest.approx([1.0, 0.75, 0.76], abs=1e-7)
+    floor = closures.equilibrium_shear(H, np.full(3, 20.0), changed)
+    assert floor / closures.equilibrium_shear(H, np.full(3, 20.0)) == pytest.approx(
+        [0.2, 0.2, 1.0 - 0.9 / 1.5]
+    )
+
+
+@pytest.mark.parametrize(("wake", "fullest"), [(False, 1.25), (True, 1.06)])
+def test_full_profiles_have_any_energy_shape(wake, fullest):
+    H, changed = np.array([fullest + 0.01, 1.05, 1.01, 1.0001]), replace(PUBLISHED, fullest=True)
+    Rt = np.full(4, 1000.0)
+    more = closures.turbulent_energy_shape(H, Rt, changed, wake=wake)
+    more -= closures.turbulent_energy_shape(H, Rt)
+    assert more[0] == 0.0
+    assert more[1] == pytest.approx(2.0 * (fullest - 1.05) ** 2)
+    assert more[3] > 0.9 * 0.1 * (fullest - 1.0) ** 2 / 0.0001
+
+
+def test_weights_are_those_of_a_quantity_that_relaxes():
+    lengths = np.array([1e-3, 0.2, 1.0, 7.0, 50.0, 300.0])
+    xi = np.append(0.0, np.cumsum(lengths)) * 5.0 * 0.01
+    layer = Side(xi, *(np.full(7, 0.01) for _ in range(5)))
+    late = second.late_weight(layer, Closures())
+    assert late[0] == pytest.approx(0.5 + 1e-3 / 12.0, abs=1e-9)
+    assert late[-1] == pytest.approx(1.0 - 1.0 / 300.0, rel=1e-12)
+    # dy/dt = -y from 1: the difference is the weighted rate, times the length.
+    end = np.exp(-lengths)
+    rate = -((1.0 - late) + late * end)
+    assert rate * lengths == pytest.approx(end - 1.0, rel=1e-10)
+    assert np.all(second.late_weight(layer, PUBLISHED) == 0.5)
+
+
+@pytest.mark.parametrize(("n", "lacking"), [(8.0, 1.0), (2.0, 4.0), (8.9999, 0.0001)])
+def test_a_laminar_edge_begins_the_wake_with_what_its_waves_have(n, lacking):
+    side = similar_layer(2.7, np.linspace(0.3, 0.8, 5))
+    side = replace(side, amplification=np.linspace(0.0, n, 5))
+    end = [
+        second.begun(side, reynolds=REYNOLDS, critical=9.0, closures=one).shear[-1]
+        for one in (Closures(), replace(Closures(), waves_at_edge=False))
     ]
-    assert np.ravel(factors) == pytest.approx([1.0 - 0.4 / 4.0, 1.0 - 0.4 * 5.0 / 32.0])
-    for wake in (False, True):
-        more, plain = (
-            closures.turbulent_dissipation(H, Rt, 0.1 * ones, one, wake=wake)
-            for one in (Closures(), PUBLISHED)
-        )
-        assert more / plain == pytest.approx([1.0, 1.09, 1.15, 1.21])
+    assert end[0] / end[1] == pytest.approx(np.exp(-lacking))
+    H, Rt = np.array(2.7), REYNOLDS * side.ue[-1] * side.theta[-1]
+    assert end[1] == float(closures.initial_shear(H, Rt, Closures()))
+    # What has turned before the edge keeps its own.
+    turned = second.begun(side, reynolds=REYNOLDS, critical=9.0, trip=0.4)
+    assert turned.shear[-1] == side.shear[-1]
 
 
 def test_the_wake_takes_over_what_both_sides_bring():
-    upper, lower = turbulent_layer(10, wake=False), similar_layer(2.6, np.linspace(0.1, 1.0, 5))
+    upper, lower = (
+        turbulent_layer(10, wake=False, chosen=Closures()),
+        similar_layer(2.6, np.linspace(0.1, 1.0, 5)),
+    )
     theta, dstar, ue, shear = second.joined(upper, lower, gap=0.001)
     assert theta == upper.theta[-1] + lower.theta[-1]
     assert dstar == pytest.approx(upper.dstar[-1] + lower.dstar[-1] + 0.001)
@@ -161,7 +229,7 @@ def test_the_wake_takes_over_what_both_sides_bring():
 
 
 def test_drag_of_a_wake_that_has_come_to_rest():
-    wake = turbulent_layer(10, wake=True)
+    wake = turbulent_layer(10, wake=True, chosen=Closures())
     still = Side(wake.xi, wake.theta, wake.theta, np.ones(11), wake.amplification, wake.shear)
     assert second.drag(still) == 2.0 * wake.theta[-1]  # the momentum that is missing
 
