@@ -15,6 +15,7 @@ from collections.abc import Callable, Iterable, Iterator
 from pathlib import Path
 from typing import Protocol
 
+from app.kernel_cache import prepare_kernel_cache
 from solver.errors import InputError
 from solver.section.geometry import Outline
 from tests.published.measured_sections import SECTIONS
@@ -213,6 +214,8 @@ def main(arguments: list[str] | None = None, *, solve: Solve | None = None) -> i
     given = parser.parse_args(arguments)
     if given.plot is not None and not can_draw():
         parser.error("--plot needs matplotlib, which is not installed")
+    if solve is None:
+        prepare_kernel_cache()
     try:
         flows = run(
             solve,
