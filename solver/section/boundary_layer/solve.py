@@ -31,6 +31,8 @@ LARGEST_GROWTH = 1.5
 AT_REST, SHEET_AT_REST = 2e-4, 3e-5
 """Largest change, as a share, of the last iteration, which squares it; and of the lagged
 wake sheet, over the free stream."""
+STILL = 0.01
+"""Share of the speed's change over three panels below which a node counts as still."""
 SHARPEST_TURN = 0.02
 """Least length, each way, over which the wake's curvature is taken."""
 LARGEST_SHIFT = 2
@@ -180,9 +182,12 @@ def _relocate(state, speed, stagnation, arc, nodes, reynolds):
     """Move the stagnation point to where the potential flow stops; at most two panels."""
     old = stagnation
     for _ in range(LARGEST_SHIFT):
-        if speed[stagnation] >= 0.0 and stagnation > 4:
+        # A node at which the flow all but stops stays on its side: on a symmetric section
+        # without lift it would change sides for ever.
+        still = STILL * (speed[stagnation + 2] - speed[stagnation - 1])
+        if speed[stagnation] >= still and stagnation > 4:
             stagnation -= 1
-        elif speed[stagnation + 1] <= 0.0 and stagnation < nodes - 6:
+        elif speed[stagnation + 1] <= -still and stagnation < nodes - 6:
             stagnation += 1
         else:
             break
