@@ -201,26 +201,16 @@ def _ascending(name: str, values: ArrayLike) -> FloatArray:
 
 def _prepared(nodes: PanelNodes, settings: FlowSettings) -> tuple[SectionPanels, Conditions]:
     from solver.section.boundary_layer.constants import ClosureConstants
-    from solver.section.boundary_layer.point import Conditions, prepared
+    from solver.section.boundary_layer.point import Conditions, place_of_trip, prepared
 
     constants = ClosureConstants()
-    middle = len(nodes.x) // 2
-    upper, lower = slice(middle, None, -1), slice(middle, None)
     conditions = Conditions(
         critical=settings.critical_amplification,
-        trip_upper=_trip(nodes.x[upper], nodes.arc[upper], settings.trip_upper),
-        trip_lower=_trip(nodes.x[lower], nodes.arc[lower], settings.trip_lower),
+        trip_upper=place_of_trip(nodes, settings.trip_upper, lower=False),
+        trip_lower=place_of_trip(nodes, settings.trip_lower, lower=True),
         constants=constants,
     )
     return prepared(nodes, constants), conditions
-
-
-def _trip(x: FloatArray, arc: FloatArray, place: float | None) -> float | None:
-    """Arc length at a share of chord, on a side from the leading edge to the trailing edge."""
-    if place is None:
-        return None
-    # The nose may reach a little ahead of the leading edge.
-    return float(np.interp(place, np.maximum.accumulate(x), arc))
 
 
 def _column(angle: FloatArray, reynolds: float, solved: Column) -> FlowColumn:

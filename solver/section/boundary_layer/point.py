@@ -29,9 +29,13 @@ NEVER = 9.0
 TRIP_ROUNDS, TRIP_TOLERANCE = 5, 1e-6
 """A trip is so far from the stagnation point, which is known after an iteration only."""
 
-WAKE_PASSES, WAKE_REYNOLDS, WAKE_CRITICAL = 2, 3e6, 9.0
-WAKE_ANGLE = np.radians(4.0)
-"""Up and down, where the wake's path is followed, once for all points of a section."""
+WAKE_ANGLES = (np.radians(4.0), np.radians(2.0))
+"""Up and down, where the wake's path is followed once for all points of a section: the
+first of them that is found."""
+WAKE_PASSES, WAKE_ITERATIONS, WAKE_REYNOLDS = 2, 30, 3e6
+WAKE_TRIP, WAKE_CRITICAL = 0.05, 9.0
+"""Transition is forced there, as a share of chord: it matters little to the path, and a
+flow with long laminar stretches is found less often."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -43,12 +47,16 @@ class SectionPanels:
     nodes : PanelNodes
         Of the body.
     falling, rising : Influence
-        Of body and wake, the wake laid for an angle of -4 and of 4 degrees.
+        Of body and wake, the wake laid for a low and for a high angle.
+    low, high : float
+        Those angles. [rad]
     """
 
     nodes: PanelNodes
     falling: Influence
     rising: Influence
+    low: float
+    high: float
 
     @cached_property
     def count(self) -> int:
@@ -79,10 +87,11 @@ class SectionPanels:
             Between both wakes in proportion to the angle, beyond them that of the
             nearer one: a section turned over flies as before.
         """
-        share = min(max(0.5 + 0.5 * angle / WAKE_ANGLE, 0.0), 1.0)
-        if share == 1.0 or self.falling is self.rising:
+        if angle >= self.high or self.falling is self.rising:
             return self.rising
-        return self.falling if share == 0.0 else between(self.falling, self.rising, share)
+        if angle <= self.low:
+            return self.falling
+        return between(self.falling, self.rising, (angle - self.low) / (self.high - self.low))
 
 
 @dataclass(frozen=True, eq=False)
@@ -230,6 +239,7 @@ def iterate(
     angle: float,
     reynolds: float,
     iterations: int,
+    trip_rounds: int = TRIP_ROUNDS,
 ) -> Outcome:
     """Bring a state to rest at one angle and Reynolds number.
 
@@ -245,6 +255,8 @@ def iterate(
         [-]
     iterations : int
         At most so many; with a trip so many for each idea of where it is.
+    trip_rounds : int, optional
+        Ideas of where a trip is, which depends on the stagnation point.
 
     Returns
     -------
@@ -256,7 +268,7 @@ def iterate(
     normal = flow.normal_along * cosine + flow.normal_across * sine
     history = np.zeros((iterations, 5))
     used = 0
-    for _ in range(TRIP_ROUNDS):
+    for _ in range(trip_rounds):
         from_place = state.place[1]
         ended, rounds, change = solve_point(
             base, flow.defect, flow.sheet, normal, flow.normal_defect, flow.normal_sheet,
@@ -319,6 +331,30 @@ def read(
     return np.concatenate([forces, places.ravel()])
 
 
+def place_of_trip(nodes: PanelNodes, share: float | None, *, lower: bool) -> float | None:
+    """Arc length at a share of chord on a side.
+
+    Parameters
+    ----------
+    nodes : PanelNodes
+    share : float or None
+        Of chord. [-]
+    lower : bool
+        The side.
+
+    Returns
+    -------
+    float or None
+        From the first node; None where there is no share.
+    """
+    if share is None:
+        return None
+    middle = len(nodes.x) // 2
+    side = slice(middle, None, 1 if lower else -1)
+    # The nose may reach a little ahead of the leading edge.
+    return float(np.interp(share, np.maximum.accumulate(nodes.x[side]), nodes.arc[side]))
+
+
 def prepared(nodes: PanelNodes, constants: ClosureConstants) -> SectionPanels:
     """Lay the wake of a section along the flow, and solve the potential flow about both.
 
@@ -331,33 +367,50 @@ def prepared(nodes: PanelNodes, constants: ClosureConstants) -> SectionPanels:
     Returns
     -------
     SectionPanels
-        With the wakes at -4 and at 4 degrees and a Reynolds number of 3e6, straight
-        ones where those points are not found.
+        With the wakes at -4 and at 4 degrees and a Reynolds number of 3e6, or at half
+        the angle where that flow is not found. Where neither is, one wake serves all
+        angles: the other one, or a straight one.
     """
     straight = influence(nodes, straight_wake(nodes))
-    conditions = Conditions(WAKE_CRITICAL, None, None, constants)
-    falling, rising = (
-        _with_wake_along_flow(nodes, straight, conditions, angle)
-        for angle in (-WAKE_ANGLE, WAKE_ANGLE)
+    conditions = Conditions(
+        WAKE_CRITICAL,
+        place_of_trip(nodes, WAKE_TRIP, lower=False),
+        place_of_trip(nodes, WAKE_TRIP, lower=True),
+        constants,
     )
-    return SectionPanels(nodes, falling, rising)
+    falling = _with_wake_along_flow(nodes, straight, conditions, -1.0)
+    rising = _with_wake_along_flow(nodes, straight, conditions, 1.0)
+    if falling is None or rising is None:
+        only, angle = falling or rising or (straight, 0.0)
+        return SectionPanels(nodes, only, only, angle, angle)
+    return SectionPanels(nodes, falling[0], rising[0], falling[1], rising[1])
 
 
 def _with_wake_along_flow(
-    nodes: PanelNodes, flow: Influence, conditions: Conditions, angle: float
-) -> Influence:
-    """Move the wake to where the flow goes at an angle."""
-    panels = SectionPanels(nodes, flow, flow)
-    state = cold_start(panels, conditions, angle=angle, reynolds=WAKE_REYNOLDS)
-    for _ in range(WAKE_PASSES):
-        outcome = iterate(
-            panels, conditions, state, angle=angle, reynolds=WAKE_REYNOLDS, iterations=60
-        )
-        if outcome.ended == BROKEN:
-            break
-        flow = influence(nodes, _followed(panels, state, angle))
-        panels = SectionPanels(nodes, flow, flow)
-    return flow
+    nodes: PanelNodes, straight: Influence, conditions: Conditions, sign: float
+) -> tuple[Influence, float] | None:
+    """Move the wake to where the flow goes at the first angle at which it is found."""
+    for size in WAKE_ANGLES:
+        flow, angle = straight, sign * size
+        panels = SectionPanels(nodes, flow, flow, angle, angle)
+        state = cold_start(panels, conditions, angle=angle, reynolds=WAKE_REYNOLDS)
+        for _ in range(WAKE_PASSES):
+            outcome = iterate(
+                panels,
+                conditions,
+                state,
+                angle=angle,
+                reynolds=WAKE_REYNOLDS,
+                iterations=WAKE_ITERATIONS,
+                trip_rounds=1,
+            )
+            if outcome.ended != CONVERGED:
+                break
+            flow = influence(nodes, _followed(panels, state, angle))
+            panels = SectionPanels(nodes, flow, flow, angle, angle)
+        if flow is not straight:
+            return flow, angle
+    return None
 
 
 def _followed(panels: SectionPanels, state: LayerState, angle: float) -> Wake:
