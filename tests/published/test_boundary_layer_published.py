@@ -13,7 +13,7 @@ from scipy.integrate import OdeSolution, solve_ivp
 
 from tests.published.tables import numbers, rows
 from tests.solver.section import second_closures as closures
-from tests.solver.section.second_closures import PUBLISHED
+from tests.solver.section.second_closures import PUBLISHED, Closures
 from tests.solver.section.second_residual import LAG_CONSTANT
 
 pytestmark = pytest.mark.published
@@ -79,6 +79,15 @@ def test_growth_of_thickness_of_similar_layers():
     assert length == pytest.approx(theta[usual] ** 2 * (2.0 - beta[usual]), abs=0.018)
     pressure = closures.pressure_function(H)[usual]
     assert pressure == pytest.approx(beta[usual] * theta[usual] ** 2, abs=0.006)
+
+
+def test_growth_length_of_layers_with_reversed_flow():
+    table = [row for row in numbers(f"{FOLDER}/falkner_skan.csv") if row["H"] > 4.0]
+    assert len(table) == 18
+    H, theta = (np.array([row[key] for row in table]) for key in ("H", "theta"))
+    # Model error of a fit of three numbers. The published ones end at separation.
+    assert closures.growth_length(H, Closures()) == pytest.approx(theta**2, rel=0.015)
+    assert np.max(closures.growth_length(H) / theta**2) > 1.5
 
 
 def test_amplification_envelope():
