@@ -9,7 +9,7 @@ import pytest
 
 from solver.section.boundary_layer.cells import LAMINAR, TURBULENT, WAKE, cell, transition_cell
 from solver.section.boundary_layer.constants import ClosureConstants
-from solver.section.boundary_layer.newton import scratch
+from solver.section.boundary_layer.newton import join, scratch
 from tests.solver.section import second_closures, second_residual
 from tests.solver.section.kernel_constants import CHOSEN, chosen_constants, constants
 from tests.solver.section.second_closures import Closures
@@ -209,3 +209,73 @@ def test_slopes_over_a_shift_of_both_places(kind):
         # The step squared, and rounding over the step.
         largest = np.max(np.abs(slopes[:, :, 4]), axis=0)
         assert np.all(np.abs(slopes[:, :, 4].sum(axis=0) - slope) < 1e-7 * largest + 1e-7)
+
+
+# --- where the wake begins
+
+EDGES = (0, 5)
+"""Nodes of the trailing edge, among six; the wake is not needed here."""
+
+
+def wake_begins(
+    numbers: np.ndarray, laminar: tuple[bool, bool], reynolds: float
+) -> tuple[np.ndarray, np.ndarray]:
+    """What the wake begins with, shape (4,), and its slopes over both edges' numbers.
+
+    `numbers`, shape (2, 4): ln theta, ln m, ln ue, a of both sides. A march leaves the
+    first, third and fourth as functions of mass defects: here each is one of its own.
+    """
+    state, amplification = np.zeros((6, 4)), np.zeros(6)
+    depends, begins, rows = np.zeros((2, 3, 8)), np.empty(4), np.zeros((4, 8))
+    for side, node in enumerate(EDGES):
+        theta, mass, ue, last = numbers[side]
+        state[node, :3] = theta, mass - ue, ue
+        state[node, 3], amplification[node] = (0.0, last) if laminar[side] else (last, 0.0)
+        for row, column in enumerate((1, 2, 3) if side == 0 else (4, 6, 7)):
+            depends[side, row, column] = 1.0
+    join(state, amplification, CRITICAL, depends, np.array(laminar), 6, reynolds, constants(),
+         scratch(), begins, rows)  # fmt: skip
+    by_mass = np.exp(numbers[:, 1])
+    slopes = rows[:, [1, 0, 2, 3, 4, 5, 6, 7]]
+    slopes[:, 1] *= by_mass[0]
+    slopes[:, 5] *= by_mass[1]
+    return begins, slopes
+
+
+def edges(generator: np.random.Generator, laminar: tuple[bool, bool]) -> np.ndarray:
+    """Draw ln theta, ln m, ln ue, a of both sides."""
+    theta, ue = np.log(generator.uniform(2e-4, 1e-2, 2)), np.log(generator.uniform(0.5, 1.1, 2))
+    H = generator.uniform(1.3, 1.7, 2)
+    n = generator.choice([2.0, 7.0, 8.9], 2)
+    last = np.where(laminar, n, np.log(generator.uniform(0.02, 0.2, 2)))
+    return np.column_stack([theta, np.log(H) + theta + ue, ue, last])
+
+
+@pytest.mark.parametrize(
+    "laminar", [(False, False), (True, False), (False, True), (True, True)], ids=str
+)
+def test_the_wake_begins_as_the_second_residual_has_it(laminar):
+    generator, step = np.random.default_rng(25), 1e-4
+    for _ in range(50):
+        numbers, reynolds = edges(generator, laminar), float(generator.uniform(1e5, 1e6))
+        begins, slopes = wake_begins(numbers, laminar, reynolds)
+        ends = []
+        for side in range(2):
+            theta, mass, ue, last = np.exp(numbers[side])
+            n = numbers[side, 3] if laminar[side] else 2.0 * CRITICAL
+            two = np.ones(2)
+            layer = Side(
+                np.array([0.9, 1.0]), theta * two, mass / ue * two, ue * two, n * two, last * two
+            )
+            ends.append(
+                second_residual.begun(layer, reynolds=reynolds, critical=CRITICAL, closures=CHOSEN)
+            )
+        assert np.exp(begins) == pytest.approx(second_residual.joined(*ends), rel=1e-12)
+        for column in range(8):
+            moved = [numbers.copy() for _ in range(2)]
+            for one, shift in zip(moved, (step, -step), strict=True):
+                one[divmod(column, 4)] += shift
+            ahead, behind = (wake_begins(one, laminar, reynolds)[0] for one in moved)
+            # The step squared, times slopes of third order.
+            slope = (ahead - behind) / (2.0 * step)
+            assert slopes[:, column] == pytest.approx(slope, abs=1e-6)
