@@ -238,13 +238,16 @@ def _with_stall(
     known = status != PointStatus.MISSING
     a, cl = angle[known], lift[known]
     limit = _limit(a, cl)
-    if limit is not None:
-        beyond = past_stall(a, cl, limit, at=angle) & (status == PointStatus.CONVERGED)
-        if not limit.bracketed:
-            beyond &= angle < limit.peak_angle
-        marked[beyond] = PointStatus.BEYOND_STALL
-    bracketed = limit is not None and limit.bracketed
-    return marked, limit.largest_lift if limit is not None and bracketed else np.nan
+    if limit is None:
+        return marked, np.nan
+    beyond = past_stall(a, cl, limit, at=angle) & (status == PointStatus.CONVERGED)
+    if not limit.bracketed:
+        beyond &= angle < limit.peak_angle
+    marked[beyond] = PointStatus.BEYOND_STALL
+    # Beside a point that is missing there may have been more.
+    top = int(np.argmin(np.abs(angle - limit.peak_angle)))
+    bracketed = limit.bracketed and known[max(top - 1, 0) : top + 2].all()
+    return marked, limit.largest_lift if bracketed else np.nan
 
 
 def _limit(angle: FloatArray, lift: FloatArray) -> LiftLimit | None:

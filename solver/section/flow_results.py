@@ -119,7 +119,8 @@ class FlowColumn:
     status : numpy.ndarray of uint8, shape (na,)
         :class:`PointStatus` codes.
     largest_lift : float
-        First attached peak; NaN where no fall behind it was found. [-]
+        First attached peak; NaN where no fall behind it was found, or a point beside
+        it is missing. [-]
     iterations : int
         Dense systems that were solved.
     """
@@ -165,7 +166,8 @@ class SectionFlow:
     status : numpy.ndarray of uint8, shape (na, nr)
         :class:`PointStatus` codes.
     largest_lift : numpy.ndarray, shape (nr,)
-        First attached peak; NaN where no fall behind it was found. [-]
+        First attached peak; NaN where no fall behind it was found, or a point beside
+        it is missing. [-]
     iterations : int
         Dense systems that were solved.
     """

@@ -9,6 +9,7 @@ import subprocess
 import sys
 import tempfile
 import time
+from dataclasses import replace
 from pathlib import Path
 
 import numpy as np
@@ -61,7 +62,7 @@ def measure() -> dict[str, dict[str, float]]:
             told: list[float] = []
             started = time.perf_counter()
             flow = section_flow(
-                outline,
+                replace(outline),  # what is remembered of an outline is found anew
                 angle=ANGLE,
                 reynolds=REYNOLDS,
                 threads=threads,

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from functools import cached_property
 
 import numpy as np
@@ -36,6 +36,8 @@ WAKE_PASSES, WAKE_ITERATIONS, WAKE_REYNOLDS = 2, 30, 3e6
 WAKE_TRIP, WAKE_CRITICAL = 0.05, 9.0
 """Transition is forced there, as a share of chord: it matters little to the path, and a
 flow with long laminar stretches is found less often."""
+MOST_BLENDS = 64
+"""Angles for which the potential flow between two wakes is remembered."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -50,6 +52,8 @@ class SectionPanels:
         Of body and wake, the wake laid for a low and for a high angle.
     low, high : float
         Those angles. [rad]
+    blends : dict
+        What was found between them, by angle: the same for all Reynolds numbers.
     """
 
     nodes: PanelNodes
@@ -57,6 +61,7 @@ class SectionPanels:
     rising: Influence
     low: float
     high: float
+    blends: dict[float, Influence] = field(default_factory=dict)
 
     @cached_property
     def count(self) -> int:
@@ -91,7 +96,13 @@ class SectionPanels:
             return self.rising
         if angle <= self.low:
             return self.falling
-        return between(self.falling, self.rising, (angle - self.low) / (self.high - self.low))
+        found = self.blends.get(angle)
+        if found is None:
+            share = (angle - self.low) / (self.high - self.low)
+            found = between(self.falling, self.rising, share)
+            if len(self.blends) < MOST_BLENDS:
+                self.blends[angle] = found
+        return found
 
 
 @dataclass(frozen=True, eq=False)

@@ -233,6 +233,13 @@ def spoiled(monkeypatch, ended: str, change: float, low: float, high: float) -> 
     return section_flow(SECTION, angle=ANGLE, reynolds=REYNOLDS[1:2])
 
 
+def test_largest_lift_is_not_claimed_beside_a_gap(flow, monkeypatch):
+    at = np.degrees(ANGLE[int(np.nanargmin(np.abs(flow.lift[:, 1] - flow.largest_lift[1])))])
+    for low, high in ((at + 0.5, at + 1.5), (at - 1.5, at - 0.5)):
+        with monkeypatch.context() as patch:
+            assert np.isnan(spoiled(patch, "BROKEN", 1.0, low, high).largest_lift[0])
+
+
 @pytest.mark.parametrize(("ended", "change"), [("BROKEN", 1e-5), ("MOVING", 0.1)])
 def test_a_point_that_is_not_found_is_missing_and_its_neighbours_are_not(
     flow, monkeypatch, ended, change
