@@ -201,7 +201,8 @@ def _ascending(name: str, values: ArrayLike) -> FloatArray:
 
 def _prepared(nodes: PanelNodes, settings: FlowSettings) -> tuple[SectionPanels, Conditions]:
     from solver.section.boundary_layer.constants import ClosureConstants
-    from solver.section.boundary_layer.point import Conditions, place_of_trip, prepared
+    from solver.section.boundary_layer.point import Conditions, place_of_trip
+    from solver.section.boundary_layer.wake_path import prepared
 
     constants = ClosureConstants()
     conditions = Conditions(

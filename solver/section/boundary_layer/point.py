@@ -10,12 +10,12 @@ from numpy.typing import NDArray
 
 from solver.section.boundary_layer.constants import ClosureConstants
 from solver.section.boundary_layer.forces import coefficients, wall_curvature, wall_pressures
-from solver.section.boundary_layer.newton import scratch, speeds
+from solver.section.boundary_layer.newton import scratch
 from solver.section.boundary_layer.readings import half_friction, stations
-from solver.section.boundary_layer.solve import solve_point, wake_angles
+from solver.section.boundary_layer.solve import solve_point
 from solver.section.boundary_layer.start import start
 from solver.section.panelling import PanelNodes
-from solver.section.potential_flow import Influence, Wake, between, influence, straight_wake
+from solver.section.potential_flow import Influence, Wake, between
 
 FloatArray = NDArray[np.float64]
 IntArray = NDArray[np.int64]
@@ -29,13 +29,6 @@ NEVER = 9.0
 TRIP_ROUNDS, TRIP_TOLERANCE = 5, 1e-6
 """A trip is so far from the stagnation point, which is known after an iteration only."""
 
-WAKE_ANGLES = (np.radians(4.0), np.radians(2.0))
-"""Up and down, where the wake's path is followed once for all points of a section: the
-first of them that is found."""
-WAKE_PASSES, WAKE_ITERATIONS, WAKE_REYNOLDS = 2, 30, 3e6
-WAKE_TRIP, WAKE_CRITICAL = 0.05, 9.0
-"""Transition is forced there, as a share of chord: it matters little to the path, and a
-flow with long laminar stretches is found less often."""
 MOST_BLENDS = 64
 """Angles for which the potential flow between two wakes is remembered."""
 
@@ -283,7 +276,7 @@ def iterate(
         from_place = state.place[1]
         ended, rounds, change = solve_point(
             base, flow.defect, flow.sheet, normal, flow.normal_defect, flow.normal_sheet,
-            _directions(flow.wake), panels.nodes.arc, flow.wake.distance, count, reynolds,
+            wake_directions(flow.wake), panels.nodes.arc, flow.wake.distance, count, reynolds,
             conditions.critical, conditions.trips(from_place), conditions.array,
             state.stations, state.amplification, state.turbulent_from, state.place, state.sheet,
             state.share, state.laminar, history, iterations,
@@ -366,85 +359,16 @@ def place_of_trip(nodes: PanelNodes, share: float | None, *, lower: bool) -> flo
     return float(np.interp(share, np.maximum.accumulate(nodes.x[side]), nodes.arc[side]))
 
 
-def prepared(nodes: PanelNodes, constants: ClosureConstants) -> SectionPanels:
-    """Lay the wake of a section along the flow, and solve the potential flow about both.
+def wake_directions(wake: Wake) -> FloatArray:
+    """Direction of each panel of a wake.
 
     Parameters
     ----------
-    nodes : PanelNodes
-        Of the body.
-    constants : ClosureConstants
+    wake : Wake
 
     Returns
     -------
-    SectionPanels
-        With the wakes at -4 and at 4 degrees and a Reynolds number of 3e6, or at half
-        the angle where that flow is not found. Where neither is, one wake serves all
-        angles: the other one, or a straight one.
+    numpy.ndarray, shape (w,)
+        Against the x axis. [rad]
     """
-    straight = influence(nodes, straight_wake(nodes))
-    conditions = Conditions(
-        WAKE_CRITICAL,
-        place_of_trip(nodes, WAKE_TRIP, lower=False),
-        place_of_trip(nodes, WAKE_TRIP, lower=True),
-        constants,
-    )
-    falling = _with_wake_along_flow(nodes, straight, conditions, -1.0)
-    rising = _with_wake_along_flow(nodes, straight, conditions, 1.0)
-    if falling is None or rising is None:
-        only, angle = falling or rising or (straight, 0.0)
-        return SectionPanels(nodes, only, only, angle, angle)
-    return SectionPanels(nodes, falling[0], rising[0], falling[1], rising[1])
-
-
-def _with_wake_along_flow(
-    nodes: PanelNodes, straight: Influence, conditions: Conditions, sign: float
-) -> tuple[Influence, float] | None:
-    """Move the wake to where the flow goes at the first angle at which it is found."""
-    for size in WAKE_ANGLES:
-        flow, angle = straight, sign * size
-        panels = SectionPanels(nodes, flow, flow, angle, angle)
-        state = cold_start(panels, conditions, angle=angle, reynolds=WAKE_REYNOLDS)
-        for _ in range(WAKE_PASSES):
-            outcome = iterate(
-                panels,
-                conditions,
-                state,
-                angle=angle,
-                reynolds=WAKE_REYNOLDS,
-                iterations=WAKE_ITERATIONS,
-                trip_rounds=1,
-            )
-            if outcome.ended != CONVERGED:
-                break
-            flow = influence(nodes, _followed(panels, state, angle))
-            panels = SectionPanels(nodes, flow, flow, angle, angle)
-        if flow is not straight:
-            return flow, angle
-    return None
-
-
-def _followed(panels: SectionPanels, state: LayerState, angle: float) -> Wake:
-    """Path of the flow behind the section in a state."""
-    flow, count = panels.influence(angle), panels.count
-    cosine, sine = np.cos(angle), np.sin(angle)
-    base = flow.along * cosine + flow.across * sine
-    normal = flow.normal_along * cosine + flow.normal_across * sine
-    speed, direction = np.empty(panels.total), np.empty(panels.total - count)
-    stagnation = int(state.place[0])
-    speeds(base, flow.defect, flow.sheet, state.sheet, state.stations, stagnation, count, speed)
-    wake_angles(
-        normal, flow.normal_defect, flow.normal_sheet, state.sheet, state.stations, stagnation,
-        count, speed, _directions(flow.wake), direction,
-    )  # fmt: skip
-    step = np.diff(flow.wake.distance)
-    return Wake(
-        flow.wake.x[0] + np.append(0.0, np.cumsum(step * np.cos(direction))),
-        flow.wake.y[0] + np.append(0.0, np.cumsum(step * np.sin(direction))),
-        flow.wake.distance,
-    )
-
-
-def _directions(wake: Wake) -> FloatArray:
-    """Direction of each wake panel [rad]."""
     return np.asarray(np.arctan2(np.diff(wake.y), np.diff(wake.x)), dtype=np.float64)
