@@ -61,7 +61,8 @@ def print_section() -> dict[str, dict[str, float]]:
     )
     for name, row in found.items():
         print(
-            f"  {name:<42} {row['median_s']:6.2f} s, first column {row['first_column_s']:5.2f} s, "
+            f"  {name:<42} {row['median_s']:6.2f} s, first column {row['first_column_s']:4.2f} s, "
+            f"processor {row['processor_s']:4.2f} s, "
             f"{row['systems']:.0f} systems, {row['ratio']:.1f} x bare ({row['bare_s']:.2f} s), "
             f"{row['missing']:.0f} missing"
         )
