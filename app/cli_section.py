@@ -41,6 +41,7 @@ from solver.section.flow import (
     critical_amplification,
 )
 from solver.section.geometry import Outline, naca_outline, outline_from_coordinates
+from solver.section.kernel_version import section_version
 from solver.section.naca import naca_digits
 
 FloatArray: TypeAlias = NDArray[np.float64]
@@ -248,7 +249,7 @@ def _computed(
     settings, turbulence = _settings(arguments)
     made_by = MadeBy(
         version=version(),
-        kernels=kernels.version,
+        solver=section_version(),
         outline=origin,
         digest=outline_digest(outline),
         turbulence=turbulence,

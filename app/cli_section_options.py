@@ -7,9 +7,9 @@ import math
 from collections.abc import Callable
 
 REYNOLDS = (1e4, 1e7)
-TURBULENCE = (0.02, 2.98)
-"""Where Mack's relation is used [%]: amplification factors of 12 down to 0."""
-CRITICAL_FACTOR = (0.0, 20.0)
+TURBULENCE = (0.02, 1.96)
+"""Where Mack's relation is used [%]: amplification factors of 12 down to 1."""
+CRITICAL_FACTOR = (1.0, 20.0)
 MOST_THREADS = 64
 
 
@@ -67,13 +67,13 @@ def _add_transition_options(parser: argparse.ArgumentParser) -> None:
         "--turbulence",
         metavar="PERCENT",
         type=_number(*TURBULENCE),
-        help="turbulence level of the air, 0.02 to 2.98 percent; 0.07 unless given",
+        help="turbulence level of the air, 0.02 to 1.96 percent; 0.07 unless given",
     )
     quiet.add_argument(
         "--critical-factor",
         metavar="N",
         type=_number(*CRITICAL_FACTOR),
-        help="instead: amplification factor where the flow turns, 0 to 20; 9 unless given",
+        help="instead: amplification factor where the flow turns, 1 to 20; 9 unless given",
     )
     for side in ("upper", "lower"):
         parser.add_argument(

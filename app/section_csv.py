@@ -32,8 +32,8 @@ class MadeBy:
     ------
     version : str
         Halfspan's.
-    kernels : str
-        Version of the solver's kernels.
+    solver : str
+        Version of the section solver, changed by any of its sources.
     outline : str
         What the outline is and where it came from.
     digest : str
@@ -45,7 +45,7 @@ class MadeBy:
     """
 
     version: str
-    kernels: str
+    solver: str
     outline: str
     digest: str
     turbulence: float
@@ -139,7 +139,7 @@ def _comments(flow: SectionFlow, made_by: MadeBy) -> list[str]:
         hinge, deflection = made_by.flap
         flap = f"hinge at {trimmed(hinge)} chord, {trimmed(deflection)} deg, down positive"
     return [
-        f"Halfspan {made_by.version}, section solver {made_by.kernels}",
+        f"Halfspan {made_by.version}, section solver {made_by.solver}",
         CAUTION,
         f"outline: {made_by.outline}; sha256 of its coordinates {made_by.digest}",
         f"critical amplification factor {flow.settings.critical_amplification:.4g}, "

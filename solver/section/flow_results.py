@@ -15,9 +15,10 @@ FloatArray = NDArray[np.float64]
 StatusArray = NDArray[np.uint8]
 
 FEWEST_NODES, MOST_NODES = 101, 201
-LEAST_CRITICAL, MOST_CRITICAL = 0.0, 20.0
-LEAST_TURBULENCE, MOST_TURBULENCE = 0.0002, 0.0298
-"""Range of Mack's relation: the factor is 12 at one end and comes to nothing at the other."""
+LEAST_CRITICAL, MOST_CRITICAL = 1.0, 20.0
+LEAST_TURBULENCE, MOST_TURBULENCE = 0.0002, 0.0196
+"""Where the factor of Mack's relation goes from 12 down to 1. In rougher air the layers turn
+turbulent without waves that could be followed: force transition there."""
 
 
 @dataclass(frozen=True)
@@ -27,7 +28,7 @@ class FlowSettings:
     Fields
     ------
     critical_amplification : float
-        Factor n of e^n at which the flow turns turbulent, 0 to 20. [-]
+        Factor n of e^n at which the flow turns turbulent, 1 to 20. [-]
     trip_upper, trip_lower : float or None
         Place of forced transition on a side as a share of chord, 0 to 1; None leaves
         it natural. The flow may turn ahead of it. [-]
@@ -65,7 +66,7 @@ def critical_amplification(turbulence: float) -> float:
     ----------
     turbulence : float
         Root mean square of the free stream's fluctuations over its speed, 0.0002 to
-        0.0298. [-]
+        0.0196. [-]
 
     Returns
     -------

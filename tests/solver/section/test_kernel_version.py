@@ -9,7 +9,13 @@ from pathlib import Path
 import pytest
 
 from solver.section import kernel_version as module
-from solver.section.kernel_version import KERNEL_SOURCES, kernel_version, version_of
+from solver.section.kernel_version import (
+    KERNEL_SOURCES,
+    SECTION_SOURCES,
+    kernel_version,
+    section_version,
+    version_of,
+)
 
 SECTION = Path(module.__file__).parent
 
@@ -70,3 +76,12 @@ def test_other_files_and_line_ends_do_not_change_it(sources):
     (sources / "boundary_layer/__pycache__/inner.cpython-311.pyc").write_bytes(b"compiled")
     (sources / "panelling.py").write_bytes(b"VALUE = 1.0\r\n")
     assert version_of(sources) == before
+
+
+def test_the_section_s_version_follows_what_no_kernel_is_made_of(sources):
+    kernels, section = version_of(sources), version_of(sources, SECTION_SOURCES)
+    fairing = sources / "fairing.py"
+    fairing.write_bytes(fairing.read_bytes() + b"\n# one more line\n")
+    assert version_of(sources) == kernels
+    assert version_of(sources, SECTION_SOURCES) != section
+    assert section_version() != kernel_version()
