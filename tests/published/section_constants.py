@@ -9,9 +9,9 @@ from. Here each of them is moved alone, the others as they are in use, and all s
 are solved again; then each section in turn is left out, the value that suits the others
 best is chosen, and the section that had no say is judged by it.
 
-What is best is said by :func:`objective`: figures of the accuracy table over what is asked
-of them. All sections at one value take about as long as the accuracy table, 0.5 to 1
-minute on one core.
+What is best is said by :func:`objective`: all figures of the accuracy table of which
+something is asked, over that. All sections at one value take about as long as the
+accuracy table, half a minute to a minute on one core.
 """
 
 from __future__ import annotations
@@ -45,8 +45,8 @@ GRID: dict[str, tuple[float, ...]] = {
 """Values tried beside the one in use. Separated growth 1, dissipation rise 0 and inner layer
 0 are the published forms."""
 
-JUDGED = ("drag_mean", "drag_bias", "lift_bias", "largest_rms_without")
-"""Figures of the accuracy table that the objective weighs alike."""
+SHOWN = ("drag_mean", "drag_bias", "lift_bias", "largest_rms_without", "converged")
+"""Figures of the accuracy table that are printed for every value."""
 
 CRITICAL_AMPLIFICATION = 9.0
 
@@ -64,8 +64,9 @@ class PlainFlow:
 
 def solve_with(constants: ClosureConstants) -> Callable[..., PlainFlow]:
     """Return a function that solves sections with constants other than those in use."""
-    from solver.section.boundary_layer.point import Conditions, prepared
+    from solver.section.boundary_layer.point import Conditions
     from solver.section.boundary_layer.sweep import solve_column
+    from solver.section.boundary_layer.wake_path import prepared
 
     conditions = Conditions(CRITICAL_AMPLIFICATION, None, None, constants)
 
@@ -96,16 +97,19 @@ def solve_with(constants: ClosureConstants) -> Callable[..., PlainFlow]:
 def objective(comparison: Comparison) -> float:
     """Mean of the sizes of figures over what is asked of them, over ranges; 1 is as asked.
 
-    Figures for which a comparison has no points are left out.
+    Of points converged, the share that is lost over the share that may be. Figures for
+    which a comparison has no points are left out.
     """
     figures = pooled(comparison)
-    shares = [
-        abs(figures[name][key]) / TARGETS[key][index]
-        for key in JUDGED
-        for index, name in enumerate(RANGES)
-    ]
-    known = [share for share in shares if np.isfinite(share)]
-    return float(np.mean(known)) if known else float("nan")
+    shares = []
+    for key, targets in TARGETS.items():
+        for name, target in zip(RANGES, targets, strict=True):
+            value = figures[name][key]
+            if key == "converged":
+                value, target = 1.0 - value, 1.0 - target
+            if np.isfinite(value):
+                shares.append(abs(value) / target)
+    return float(np.mean(shares)) if shares else float("nan")
 
 
 @dataclass(frozen=True)
@@ -169,8 +173,8 @@ def lines(constant: str, trials: Mapping[float, Comparison]) -> Iterator[str]:
     choices = left_out(trials, used=used)
     yield ""
     yield f"{constant}, {used:g} in use"
-    yield f"  {'':30}{'objective':>10}" + "".join(f"{name:>30}" for name in RANGES)
-    yield f"  {'':30}{'':10}" + 3 * f"{'cd mean  bias  cl bias  top':>30}"
+    yield f"  {'':30}{'objective':>10}" + "".join(f"{name:>38}" for name in RANGES)
+    yield f"  {'':30}{'':10}" + 3 * f"{'cd mean  bias  cl bias  top  found':>38}"
     for value, comparison in trials.items():
         yield _row(f"{value:g}{' (in use)' if value == used else ''}", comparison)
     yield _row("each chosen without the section", cross_judged(trials, choices))
@@ -184,8 +188,9 @@ def lines(constant: str, trials: Mapping[float, Comparison]) -> Iterator[str]:
 def _row(label: str, comparison: Comparison) -> str:
     cells = ""
     for figures in pooled(comparison).values():
-        drag, bias, lift, top = (figures[key] for key in JUDGED)
+        drag, bias, lift, top, found = (figures[key] for key in SHOWN)
         cells += f"{100 * drag:8.1f} %{100 * bias:+6.1f} %{lift:+8.3f}{top:6.3f}"
+        cells += f"{100 * found:6.1f} %"
     return f"  {label:32}{objective(comparison):8.3f}{cells}"
 
 

@@ -15,26 +15,28 @@ from tests.published.section_constants import (
     objective,
     solve_with,
 )
-from tests.published.section_records import DRAG, LIFT, Comparison
+from tests.published.section_records import CONVERGED, DRAG, LIFT, Comparison
 
 ROUND_OFF = 1e-12
 """Sums of a few numbers of size 1."""
 
 
-def made(drag: dict[str, float], *, lift: float = 0.0) -> Comparison:
-    """One drag and one lift reading a section above 170,000, with given errors."""
+def made(drag: dict[str, float], *, lift: float = 0.0, found: float = 1.0) -> Comparison:
+    """One reading of each kind a section above 170,000, with given errors."""
     records = []
     for section, error in drag.items():
         records.append((section, "t", DRAG, 3e5, 0.0, 0.5, 0.02, 0.02 * (1.0 + error)))
         records.append((section, "t", LIFT, 3e5, 0.0, 0.5, 0.5, 0.5 + lift))
+        records.append((section, "t", CONVERGED, 3e5, 0.0, 0.5, 1.0, found))
     return Comparison.of(records)
 
 
 def test_the_objective_is_one_where_all_is_as_asked():
-    # Above 170,000: 7.5 % mean and 2.5 % bias of drag, 0.03 of lift.
-    assert objective(made({"a": 0.075}, lift=0.03)) == pytest.approx((1.0 + 3.0 + 1.0) / 3.0)
+    # Above 170,000: 7.5 % mean and 2.5 % bias of drag, 0.03 of lift, 99.5 % of points.
+    one = objective(made({"a": 0.075}, lift=0.03, found=0.995))
+    assert one == pytest.approx((1.0 + 3.0 + 1.0 + 1.0) / 4.0)
     mixed = made({"a": 0.075, "b": -0.075}, lift=-0.03)  # bias 0, the sign of lift is nothing
-    assert objective(mixed) == pytest.approx((1.0 + 0.0 + 1.0) / 3.0, abs=ROUND_OFF)
+    assert objective(mixed) == pytest.approx((1.0 + 0.0 + 1.0 + 0.0) / 4.0, abs=ROUND_OFF)
 
 
 def test_nothing_compared_has_no_objective():
