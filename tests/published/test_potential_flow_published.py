@@ -227,13 +227,13 @@ def test_speed_by_outflow_from_the_surface(name, defect):
         nodes, found = solved(name, count)
         exact = SHAPES[name].speed_by_defect(turn[1:-1], defect)
         off = (found.defect[:count, :count] @ defect(turn))[1:-1] - exact
-        # Just before a cusp the surfaces are closer together than their panels are
-        # long, and the last nodes never converge; with an edge of 9 degrees they do.
-        ahead = nodes.x[1:-1] < (1.0 if name == "wedge" else 0.95)
-        errors.append(np.max(np.abs(off[ahead])) / np.max(np.abs(exact)))
-    # First order: a panel's sources spread evenly over a flat piece of a bent surface.
-    assert np.all(orders(errors) > 0.8)
-    assert errors[1] < 0.02  # of 160 panels
+        # Near the trailing edge the surfaces are closer together than their panels are
+        # long: the last nodes of a cusp never converge, those of an edge slowly.
+        errors.append(np.max(np.abs(off[nodes.x[1:-1] < 0.9])) / np.max(np.abs(exact)))
+    # First order, less beside an edge with an angle: a panel's sources are spread evenly
+    # over it. Over both refinements together, since the worst node is not always the same.
+    assert np.mean(orders(errors)) > (0.5 if name == "wedge" else 0.8)
+    assert errors[1] < 0.005  # of 160 panels
 
 
 def in_the_wake(distance: np.ndarray) -> np.ndarray:
