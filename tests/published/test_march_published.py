@@ -7,7 +7,8 @@ from dataclasses import dataclass
 import numpy as np
 import pytest
 
-from solver.section.boundary_layer.newton import scratch
+from solver.section.boundary_layer.cells import scratch
+from solver.section.boundary_layer.layout import Regime, Stagnation, Stations, blank_state
 from solver.section.boundary_layer.start import start_side
 from tests.published.tables import numbers, rows
 from tests.solver.section import second_closures as closures
@@ -51,14 +52,16 @@ def march(
 ) -> Marched:
     """March a lower side whose stagnation point is at xi = 0."""
     count = len(xi) + 1
-    state, amplification = np.zeros((count, 4)), np.zeros(count)
-    state[1:, 2] = np.log(ue)
-    first = start_side(
-        1, 0, 0.0, np.append(0.0, xi), count, reynolds, critical, trip, constants(), state,
-        amplification, scratch(),
-    )  # fmt: skip
-    theta, dstar, speed = np.exp(state[1:, :3].T)
-    return Marched(xi, theta, dstar, speed, amplification[1:], first - 1, reynolds)
+    state = blank_state(count, 0)
+    state.stations[1:, 2] = np.log(ue)
+    stations, regime = (
+        Stations(np.append(0.0, xi), np.zeros(1)),
+        Regime(reynolds, critical, constants()),
+    )
+    start_side(1, Stagnation(0, 0.0), stations, trip, regime, state, scratch())
+    theta, dstar, speed = np.exp(state.stations[1:, :3].T)
+    first = int(state.turbulent_from[1])
+    return Marched(xi, theta, dstar, speed, state.amplification[1:], first - 1, reynolds)
 
 
 def similar_layers() -> list[dict[str, float]]:

@@ -1,217 +1,272 @@
 """The equations of one cell between two stations, and their slopes.
 
-Momentum, energy shape and growth (or lag), in logarithmic differences. A cell in
-which transition falls is a blend of its laminar and its turbulent equations.
+Momentum, energy shape and growth (or lag), in logarithmic differences, after Drela and
+Giles (AIAA Journal 25(10), 1987), recalled.
 """
 
 from __future__ import annotations
 
 import math
 
-import numba
+import numpy as np
 
 from solver.section.boundary_layer.closures import growth
-from solver.section.boundary_layer.constants import INITIAL_STRESS, LAG, RELAXING
+from solver.section.boundary_layer.compiled import (
+    compiled,
+    compiled_in_place,
+    compiled_part,
+    inlined,
+    of_one_type,
+)
+from solver.section.boundary_layer.constants import RELAXING
+from solver.section.boundary_layer.layout import (
+    FRICTION,
+    GAIN,
+    LAST,
+    LN_DSTAR,
+    LN_ENERGY,
+    LN_SPEED,
+    LN_THETA,
+    MOMENTUM,
+    PLACE,
+    RATE,
+    SHAPE,
+    THIRD,
+    Blend,
+    CellArrays,
+    Equations,
+    Pair,
+    Quantities,
+    Regime,
+    Scratch,
+)
 from solver.section.boundary_layer.stations import laminar_station, turbulent_station
 
-LAMINAR, TURBULENT, WAKE = 0, 1, 2
+LAMINAR, TURBULENT, WAKE = of_one_type(0), of_one_type(1), of_one_type(2)
+"""Kinds of a cell."""
+
+FEW_LENGTHS, MANY_LENGTHS = 0.05, 40.0
+"""Relaxation lengths of a cell beyond which the weight's limits take over from its formula."""
+
+Means = tuple[float, float, float]
 
 
-@numba.njit(cache=True, nogil=True, error_model="numpy")
-def late_share(r):
-    """Weight of station two in the mean over a cell of r relaxation lengths, and its slope.
+@compiled
+def scratch() -> Scratch:
+    """Make the arrays that cells fill.
 
-    Exponential fitting: exact for a quantity that relaxes linearly, one half for small r
-    and one for large (Liniger and Willoughby, SIAM J. Numer. Anal. 7, 1970).
+    Returns
+    -------
+    Scratch
     """
-    if r < 0.05:
+    return Scratch(
+        CellArrays(
+            Quantities(np.zeros((2, 6)), np.zeros((2, 6, 5)), np.zeros(2)),
+            Equations(np.zeros(3), np.zeros((3, 5)), np.zeros((3, 5))),
+        ),
+        Blend(
+            Equations(np.zeros(3), np.zeros((3, 5)), np.zeros((3, 5))),
+            np.zeros(5),
+            np.zeros(5),
+            np.zeros(4),
+        ),
+    )
+
+
+@inlined
+def late_share(r: float) -> tuple[float, float]:
+    """Weight of station two in the mean over a cell.
+
+    Parameters
+    ----------
+    r : float
+        Length of the cell over that of relaxation. [-]
+
+    Returns
+    -------
+    tuple of float
+        The weight, and its slope over r. [-]
+
+    Notes
+    -----
+    Exponential fitting, exact for a quantity that relaxes linearly [1]_: one half for
+    small r and one for large.
+
+    References
+    ----------
+    .. [1] W. Liniger, R. A. Willoughby, Efficient integration methods for stiff systems
+       of ordinary differential equations, SIAM J. Numer. Anal. 7, 1970; recalled.
+    """
+    if r < FEW_LENGTHS:
         return 0.5 + r / 12.0, 1.0 / 12.0
-    if r > 40.0:
+    if r > MANY_LENGTHS:
         return 1.0 - 1.0 / r, 1.0 / (r * r)
     e = math.exp(-r)
     return 1.0 / (1.0 - e) - 1.0 / r, 1.0 / (r * r) - e / ((1.0 - e) * (1.0 - e))
 
 
-@numba.njit(cache=True, nogil=True, error_model="numpy")
-def balance(one, two, xi, relaxing, value, slope, residual, first, second):
-    """Fill residual and slopes of a cell of one kind.
+@inlined
+def _fill_momentum(pair: Pair, means: Means, quantities: Quantities, equations: Equations) -> None:
+    """Fill d ln theta + (2 + H) d ln ue - d ln xi (xi cf/(2 theta)).
+
+    H and friction are means; `means` are H at both stations and d ln xi.
+    """
+    one, two, xi = pair
+    value, slope = quantities.value, quantities.slope
+    first, second = equations.first, equations.second
+    du = two[LN_SPEED] - one[LN_SPEED]
+    h1, h2, x = means
+    h = 0.5 * (h1 + h2)
+    friction = 0.5 * (value[0, FRICTION] + value[1, FRICTION])
+    equations.residual[MOMENTUM] = two[LN_THETA] - one[LN_THETA] + (2.0 + h) * du - x * friction
+    for j in range(5):
+        first[MOMENTUM, j] = -0.5 * x * slope[0, FRICTION, j]
+        second[MOMENTUM, j] = -0.5 * x * slope[1, FRICTION, j]
+    half1, half2 = 0.5 * h1 * du, 0.5 * h2 * du
+    first[MOMENTUM, LN_THETA] -= 1.0 + half1
+    first[MOMENTUM, LN_DSTAR] += half1
+    first[MOMENTUM, LN_SPEED] -= 2.0 + h
+    first[MOMENTUM, PLACE] += friction / xi[0]
+    second[MOMENTUM, LN_THETA] += 1.0 - half2
+    second[MOMENTUM, LN_DSTAR] += half2
+    second[MOMENTUM, LN_SPEED] += 2.0 + h
+    second[MOMENTUM, PLACE] -= friction / xi[1]
+
+
+@inlined
+def _fill_shape(
+    pair: Pair, means: Means, relaxing: float, quantities: Quantities, equations: Equations
+) -> None:
+    """Fill d ln Hs + (1 - H) d ln ue - d ln xi (xi (2 CD/Hs - cf/2)/theta).
+
+    The last mean leans towards station two by `late_share`.
+    """
+    one, two, xi = pair
+    value, slope = quantities.value, quantities.slope
+    first, second = equations.first, equations.second
+    du = two[LN_SPEED] - one[LN_SPEED]
+    h1, h2, x = means
+    h = 0.5 * (h1 + h2)
+    late, late_r, r = 0.5, 0.0, 0.0
+    if relaxing > 0.0:
+        r = (xi[1] - xi[0]) / (relaxing * math.exp(two[LN_THETA]))
+        late, late_r = late_share(r)
+    gain = (1.0 - late) * value[0, GAIN] + late * value[1, GAIN]
+    equations.residual[SHAPE] = (
+        value[1, LN_ENERGY] - value[0, LN_ENERGY] + (1.0 - h) * du - x * gain
+    )
+    for j in range(5):
+        first[SHAPE, j] = -slope[0, LN_ENERGY, j] - (1.0 - late) * x * slope[0, GAIN, j]
+        second[SHAPE, j] = slope[1, LN_ENERGY, j] - late * x * slope[1, GAIN, j]
+    second[SHAPE, LN_THETA] += x * (value[1, GAIN] - value[0, GAIN]) * late_r * r
+    half1, half2 = 0.5 * h1 * du, 0.5 * h2 * du
+    first[SHAPE, LN_THETA] += half1
+    first[SHAPE, LN_DSTAR] -= half1
+    first[SHAPE, LN_SPEED] -= 1.0 - h
+    first[SHAPE, PLACE] += gain / xi[0]
+    second[SHAPE, LN_THETA] += half2
+    second[SHAPE, LN_DSTAR] -= half2
+    second[SHAPE, LN_SPEED] += 1.0 - h
+    second[SHAPE, PLACE] -= gain / xi[1]
+
+
+@inlined
+def _fill_third(pair: Pair, quantities: Quantities, equations: Equations) -> None:
+    """Fill da - dxi (da/dxi), for growth in laminar cells and lag in turbulent ones."""
+    value, slope = quantities.value, quantities.slope
+    first, second = equations.first, equations.second
+    dxi = pair.xi[1] - pair.xi[0]
+    rate = 0.5 * (value[0, RATE] + value[1, RATE])
+    equations.residual[THIRD] = pair.two[LAST] - pair.one[LAST] - dxi * rate
+    for j in range(5):
+        first[THIRD, j] = -0.5 * dxi * slope[0, RATE, j]
+        second[THIRD, j] = -0.5 * dxi * slope[1, RATE, j]
+    first[THIRD, LAST] -= 1.0
+    second[THIRD, LAST] += 1.0
+
+
+@compiled_part
+def balance(pair: Pair, relaxing: float, quantities: Quantities, equations: Equations) -> None:
+    """Fill residuals and slopes of a cell of one kind.
 
     Parameters
     ----------
-    one, two : ndarray, shape (4,)
-        States.
-    xi : ndarray, shape (2,)
-        Places.
+    pair : Pair
     relaxing : float
         Relaxation length of the energy shape parameter over theta; 0 weighs both
-        stations alike.
-    value : ndarray, shape (2, 6)
-        Quantities at both stations.
-    slope : ndarray, shape (2, 6, 5)
-        Their slopes.
-    residual : ndarray, shape (3,)
-        Filled.
-    first, second : ndarray, shape (3, 5)
-        Filled: slopes over the states and places of the two stations.
+        stations alike. [-]
+    quantities : Quantities
+        Of both stations.
+    equations : Equations
+        Filled. Slopes over the places are good for a shift of both at once, all that
+        ever happens to them: what depends on the cell's length alone is left out.
     """
-    dt = two[0] - one[0]
-    du = two[2] - one[2]
-    h1, h2 = math.exp(one[1] - one[0]), math.exp(two[1] - two[0])
-    h = 0.5 * (h1 + h2)
-    x = math.log(xi[1] / xi[0])
-    dxi = xi[1] - xi[0]
-    friction = 0.5 * (value[0, 1] + value[1, 1])
-    late, late_r, r = 0.5, 0.0, 0.0
-    if relaxing > 0.0:
-        r = dxi / (relaxing * math.exp(two[0]))
-        late, late_r = late_share(r)
-    shape = (1.0 - late) * value[0, 2] + late * value[1, 2]
-    residual[0] = dt + (2.0 + h) * du - x * friction
-    residual[1] = value[1, 0] - value[0, 0] + (1.0 - h) * du - x * shape
-    residual[2] = two[3] - one[3] - dxi * 0.5 * (value[0, 3] + value[1, 3])
-    for j in range(5):
-        first[0, j] = -0.5 * x * slope[0, 1, j]
-        second[0, j] = -0.5 * x * slope[1, 1, j]
-        first[1, j] = -slope[0, 0, j] - (1.0 - late) * x * slope[0, 2, j]
-        second[1, j] = slope[1, 0, j] - late * x * slope[1, 2, j]
-        first[2, j] = -0.5 * dxi * slope[0, 3, j]
-        second[2, j] = -0.5 * dxi * slope[1, 3, j]
-    second[1, 0] += x * (value[1, 2] - value[0, 2]) * late_r * r
-    half1, half2 = 0.5 * h1 * du, 0.5 * h2 * du
-    first[0, 0] -= 1.0 + half1
-    first[0, 1] += half1
-    first[0, 2] -= 2.0 + h
-    first[0, 4] += friction / xi[0]
-    second[0, 0] += 1.0 - half2
-    second[0, 1] += half2
-    second[0, 2] += 2.0 + h
-    second[0, 4] -= friction / xi[1]
-    first[1, 0] += half1
-    first[1, 1] -= half1
-    first[1, 2] -= 1.0 - h
-    first[1, 4] += shape / xi[0]
-    second[1, 0] += half2
-    second[1, 1] -= half2
-    second[1, 2] += 1.0 - h
-    second[1, 4] -= shape / xi[1]
-    first[2, 3] -= 1.0
-    second[2, 3] += 1.0
+    one, two, xi = pair.one, pair.two, pair.xi
+    h1 = math.exp(one[LN_DSTAR] - one[LN_THETA])
+    h2 = math.exp(two[LN_DSTAR] - two[LN_THETA])
+    means = (h1, h2, math.log(xi[1] / xi[0]))
+    _fill_momentum(pair, means, quantities, equations)
+    _fill_shape(pair, means, relaxing, quantities, equations)
+    _fill_third(pair, quantities, equations)
 
 
-@numba.njit(cache=True, nogil=True, error_model="numpy")
-def laminar_pair(one, two, xi, reynolds, constants, value, slope, cross):
-    """Fill the laminar quantities of both stations of a cell.
+@compiled_part
+def laminar_pair(pair: Pair, regime: Regime, quantities: Quantities) -> None:
+    """Fill the quantities of both stations of a laminar cell.
 
+    Parameters
+    ----------
+    pair : Pair
+    regime : Regime
+    quantities : Quantities
+        Filled.
+
+    Notes
+    -----
     Where H falls along the cell the growth at station two is taken at the H of
     station one: otherwise the drop of H behind transition would undo the growth that
-    brought it about, and some cells would have no solution. `cross` holds the slopes
-    of that growth over ln theta and ln dstar of station one.
+    brought it about, and some cells would have no solution.
     """
-    laminar_station(one, xi[0], reynolds, constants, value[0], slope[0])
-    laminar_station(two, xi[1], reynolds, constants, value[1], slope[1])
+    one, two, xi = pair.one, pair.two, pair.xi
+    value, slope, cross = quantities.value, quantities.slope, quantities.cross
+    laminar_station(one, xi[0], regime, value[0], slope[0])
+    laminar_station(two, xi[1], regime, value[1], slope[1])
     cross[0], cross[1] = 0.0, 0.0
-    if two[1] - two[0] < one[1] - one[0]:
-        h = math.exp(one[1] - one[0])
-        theta = math.exp(two[0])
-        g, g_h, g_r = growth(h, reynolds * math.exp(two[0] + two[2]), constants)
-        value[1, 3] = g / theta
-        slope[1, 3, 0], slope[1, 3, 1], slope[1, 3, 2] = (g_r - g) / theta, 0.0, g_r / theta
-        cross[0], cross[1] = -h * g_h / theta, h * g_h / theta
+    if two[LN_DSTAR] - two[LN_THETA] < one[LN_DSTAR] - one[LN_THETA]:
+        h = math.exp(one[LN_DSTAR] - one[LN_THETA])
+        theta = math.exp(two[LN_THETA])
+        rt = regime.reynolds * math.exp(two[LN_THETA] + two[LN_SPEED])
+        grown = growth(h, rt, regime.constants)
+        value[1, RATE] = grown.value / theta
+        slope[1, RATE, LN_THETA] = (grown.over_rt - grown.value) / theta
+        slope[1, RATE, LN_DSTAR] = 0.0
+        slope[1, RATE, LN_SPEED] = grown.over_rt / theta
+        cross[0], cross[1] = -h * grown.over_h / theta, h * grown.over_h / theta
 
 
-@numba.njit(cache=True, nogil=True, error_model="numpy")
-def cell(kind, one, two, xi, reynolds, constants, work, residual, first, second):
-    """Fill residual and slopes of a laminar, turbulent or wake cell."""
-    value, slope = work[0], work[1]
+@compiled_in_place
+def cell(kind: int, pair: Pair, regime: Regime, arrays: CellArrays) -> None:
+    """Fill residuals and slopes of a laminar, turbulent or wake cell.
+
+    Parameters
+    ----------
+    kind : int
+        `LAMINAR`, `TURBULENT` or `WAKE`.
+    pair : Pair
+    regime : Regime
+    arrays : CellArrays
+        Its `equations` are filled.
+    """
+    xi, quantities = pair.xi, arrays.quantities
     if kind == LAMINAR:
-        cross = work[2]
-        laminar_pair(one, two, xi, reynolds, constants, value, slope, cross)
-        balance(one, two, xi, 0.0, value, slope, residual, first, second)
-        first[2, 0] -= 0.5 * (xi[1] - xi[0]) * cross[0]
-        first[2, 1] -= 0.5 * (xi[1] - xi[0]) * cross[1]
+        laminar_pair(pair, regime, quantities)
+        balance(pair, 0.0, quantities, arrays.equations)
+        first, cross = arrays.equations.first, quantities.cross
+        first[THIRD, LN_THETA] -= 0.5 * (xi[1] - xi[0]) * cross[0]
+        first[THIRD, LN_DSTAR] -= 0.5 * (xi[1] - xi[0]) * cross[1]
     else:
         wake = kind == WAKE
-        turbulent_station(one, xi[0], reynolds, wake, constants, value[0], slope[0])
-        turbulent_station(two, xi[1], reynolds, wake, constants, value[1], slope[1])
-        balance(one, two, xi, constants[RELAXING], value, slope, residual, first, second)
-
-
-@numba.njit(cache=True, nogil=True, error_model="numpy")
-def transition_cell(
-    one, two, xi, reynolds, critical, trip, constants, work, more, residual, first, second
-):
-    """Fill residual and slopes of the cell in which the flow turns turbulent.
-
-    `one` carries n, `two` carries ln S. The turbulent share W of the cell follows
-    from where n crosses the critical factor, or from the trip if that is ahead.
-    Returns W.
-    """
-    value, slope = work[0], work[1]
-    r_lam, f_lam, s_lam = more[0], more[1], more[2]
-    cross = work[2]
-    laminar_pair(one, two, xi, reynolds, constants, value, slope, cross)
-    balance(one, two, xi, 0.0, value, slope, r_lam, f_lam, s_lam)
-    dxi = xi[1] - xi[0]
-    grown = 0.5 * dxi * (value[0, 3] + value[1, 3])
-    w = 0.0
-    d_first, d_second = more[3], more[4]
-    for j in range(5):
-        d_first[j] = 0.0
-        d_second[j] = 0.0
-    left = critical - one[3]
-    if grown > left and grown > 1e-12:
-        left = max(left, 0.0)
-        w = 1.0 - left / grown
-        for j in range(4):
-            d_first[j] = left / (grown * grown) * 0.5 * dxi * slope[0, 3, j]
-            d_second[j] = left / (grown * grown) * 0.5 * dxi * slope[1, 3, j]
-        for j in range(2):
-            d_first[j] += left / (grown * grown) * 0.5 * dxi * cross[j]
-        d_first[3] += 1.0 / grown
-    tripped = (xi[1] - trip) / dxi
-    if tripped > w:
-        w = min(tripped, 1.0)
-        for j in range(5):
-            d_first[j] = 0.0
-            d_second[j] = 0.0
-
-    # Turbulent equations; ahead of transition the stress is the initial one.
-    share = math.sqrt(constants[INITIAL_STRESS])
-    guess = more[5]
-    for j in range(3):
-        guess[j] = one[j]
-    guess[3] = 0.0
-    turbulent_station(guess, xi[0], reynolds, False, constants, value[0], slope[0])
-    guess[3] = value[0, 4] + math.log(share)
-    turbulent_station(guess, xi[0], reynolds, False, constants, value[0], slope[0])
-    for q in range(4):  # the initial stress depends on the state of station one
-        s_slope = slope[0, q, 3]
-        for j in range(3):
-            slope[0, q, j] += s_slope * slope[0, 4, j]
-        slope[0, q, 3] = 0.0
-    turbulent_station(two, xi[1], reynolds, False, constants, value[1], slope[1])
-    balance(guess, two, xi, constants[RELAXING], value, slope, residual, first, second)
-    for row in range(2):
-        first[row, 3] = 0.0
-        gap = residual[row] - r_lam[row]
-        residual[row] = (1.0 - w) * r_lam[row] + w * residual[row]
-        for j in range(5):
-            first[row, j] = (1.0 - w) * f_lam[row, j] + w * first[row, j] + gap * d_first[j]
-            second[row, j] = (1.0 - w) * s_lam[row, j] + w * second[row, j] + gap * d_second[j]
-
-    # Lag from the initial stress, at the place of transition, over the turbulent share.
-    half_lag = (1.0 - share) * 0.5 * constants[LAG]
-    gap_e, gap_l = value[0, 4] - value[1, 4], value[0, 5] - value[1, 5]
-    equilibrium = value[1, 4] + w * gap_e
-    start = half_lag * math.exp(equilibrium - value[1, 5] - w * gap_l)
-    rate = 0.5 * (start + value[1, 3])
-    residual[2] = two[3] - equilibrium - math.log(share) - w * dxi * rate
-    of_w = -gap_e - dxi * rate - w * dxi * 0.5 * start * (gap_e - gap_l)
-    for j in range(5):
-        e1, e2 = w * slope[0, 4, j], (1.0 - w) * slope[1, 4, j]
-        l1, l2 = w * slope[0, 5, j], (1.0 - w) * slope[1, 5, j]
-        first[2, j] = -e1 - w * dxi * 0.5 * start * (e1 - l1) + of_w * d_first[j]
-        second[2, j] = -e2 - w * dxi * 0.5 * (start * (e2 - l2) + slope[1, 3, j])
-        second[2, j] += of_w * d_second[j]
-    second[2, 3] += 1.0
-    return w
+        value, slope = quantities.value, quantities.slope
+        turbulent_station(pair.one, xi[0], wake, regime, value[0], slope[0])
+        turbulent_station(pair.two, xi[1], wake, regime, value[1], slope[1])
+        balance(pair, regime.constants[RELAXING], quantities, arrays.equations)

@@ -4,13 +4,11 @@ from __future__ import annotations
 
 import math
 
-import numba
 import numpy as np
-from numpy.typing import NDArray
 
+from solver.section.boundary_layer.compiled import compiled
+from solver.section.boundary_layer.layout import FloatArray
 from solver.section.panelling import PanelNodes
-
-FloatArray = NDArray[np.float64]
 
 MOMENT_CENTRE = 0.25
 """On the chord, over its length."""
@@ -39,7 +37,7 @@ def wall_curvature(nodes: PanelNodes) -> FloatArray:
     return curvature
 
 
-@numba.njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def wall_pressures(state: FloatArray, curvature: FloatArray, share: float) -> FloatArray:
     """Pressure coefficients at the wall.
 
@@ -67,7 +65,7 @@ def wall_pressures(state: FloatArray, curvature: FloatArray, share: float) -> Fl
     return pressure
 
 
-@numba.njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def coefficients(
     x: FloatArray, y: FloatArray, pressure: FloatArray, wake_end: FloatArray, angle: float
 ) -> tuple[float, float, float]:

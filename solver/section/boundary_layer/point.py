@@ -6,23 +6,23 @@ from dataclasses import dataclass, field
 from functools import cached_property
 
 import numpy as np
-from numpy.typing import NDArray
 
 from solver.section.boundary_layer.constants import ClosureConstants
 from solver.section.boundary_layer.forces import coefficients, wall_curvature, wall_pressures
-from solver.section.boundary_layer.newton import scratch
+from solver.section.boundary_layer.layout import (
+    FloatArray,
+    LayerState,
+    Linear,
+    PotentialFlow,
+    Regime,
+    Stations,
+    blank_state,
+)
 from solver.section.boundary_layer.readings import half_friction, stations
-from solver.section.boundary_layer.solve import solve_point
+from solver.section.boundary_layer.solve import CONVERGED, solve_point
 from solver.section.boundary_layer.start import start
 from solver.section.panelling import PanelNodes
 from solver.section.potential_flow import Influence, Wake, between
-
-FloatArray = NDArray[np.float64]
-IntArray = NDArray[np.int64]
-BoolArray = NDArray[np.bool_]
-
-CONVERGED, MOVING, BROKEN = 0, 1, 2
-"""How an iteration ended: at rest, without coming to rest, or in numbers that are none."""
 
 NEVER = 9.0
 """Distance of a trip that is not there, over chord."""
@@ -121,6 +121,10 @@ class Conditions:
         """The constants as the kernels take them."""
         return self.constants.as_array()
 
+    def regime(self, reynolds: float) -> Regime:
+        """What the kernels take of them, at a Reynolds number."""
+        return Regime(reynolds, self.critical, self.array)
+
     @property
     def tripped(self) -> bool:
         """Whether transition is forced anywhere."""
@@ -134,45 +138,6 @@ class Conditions:
                 NEVER if upper is None else stagnation - upper,
                 NEVER if lower is None else lower - stagnation,
             ]
-        )
-
-
-@dataclass(eq=False)
-class LayerState:
-    """The layers of a point while it is iterated; the kernels write into its arrays.
-
-    Parameters
-    ----------
-    stations : numpy.ndarray, shape (n + w, 4)
-        (ln theta, ln dstar, ln ue, ln S) of body and wake.
-    amplification : numpy.ndarray, shape (n,)
-    turbulent_from : numpy.ndarray of int, shape (2,)
-    place : numpy.ndarray, shape (2,)
-        Node before the stagnation point, and its arc length.
-    sheet : numpy.ndarray, shape (w + 1,)
-    share : numpy.ndarray, shape (2,)
-        Turbulent share of the cells with transition.
-    laminar : numpy.ndarray of bool, shape (n + w,)
-    """
-
-    stations: FloatArray
-    amplification: FloatArray
-    turbulent_from: IntArray
-    place: FloatArray
-    sheet: FloatArray
-    share: FloatArray
-    laminar: BoolArray
-
-    def copy(self) -> LayerState:
-        """Return the same state in arrays of its own."""
-        return LayerState(
-            self.stations.copy(),
-            self.amplification.copy(),
-            self.turbulent_from.copy(),
-            self.place.copy(),
-            self.sheet.copy(),
-            self.share.copy(),
-            self.laminar.copy(),
         )
 
 
@@ -213,25 +178,15 @@ def cold_start(
     -------
     LayerState
     """
-    count, total = panels.count, panels.total
-    state = LayerState(
-        stations=np.zeros((total, 4)),
-        amplification=np.zeros(count),
-        turbulent_from=np.full(2, -1),
-        place=np.zeros(2),
-        sheet=np.zeros(total - count + 1),
-        share=np.zeros(2),
-        laminar=np.zeros(total, dtype=np.bool_),
-    )
+    count = panels.count
+    state = blank_state(count, panels.total - count)
     flow = panels.influence(angle)
     speed = flow.along * np.cos(angle) + flow.across * np.sin(angle)
     # The kernel finds the stagnation point itself; a trip needs a first idea of it.
     turns = np.flatnonzero((speed[: count - 1] < 0.0) & (speed[1:count] >= 0.0))
     trips = conditions.trips(panels.nodes.arc[turns[0] if turns.size else count // 2])
-    state.place[:] = start(
-        speed, panels.nodes.arc, flow.wake.distance, count, reynolds, conditions.critical, trips,
-        conditions.array, state.stations, state.amplification, state.turbulent_from, scratch(),
-    )  # fmt: skip
+    places = Stations(panels.nodes.arc, flow.wake.distance)
+    start(speed, places, trips, conditions.regime(reynolds), state)
     return state
 
 
@@ -266,21 +221,17 @@ def iterate(
     -------
     Outcome
     """
-    flow, count = panels.influence(angle), panels.count
-    cosine, sine = np.cos(angle), np.sin(angle)
-    base = flow.along * cosine + flow.across * sine
-    normal = flow.normal_along * cosine + flow.normal_across * sine
+    flow = panels.influence(angle)
+    at_angle, regime = potential_flow_at(flow, angle), conditions.regime(reynolds)
+    places = Stations(panels.nodes.arc, flow.wake.distance)
     history = np.zeros((iterations, 5))
     used = 0
     for _ in range(trip_rounds):
         from_place = state.place[1]
+        trips = conditions.trips(from_place)
         ended, rounds, change = solve_point(
-            base, flow.defect, flow.sheet, normal, flow.normal_defect, flow.normal_sheet,
-            wake_directions(flow.wake), panels.nodes.arc, flow.wake.distance, count, reynolds,
-            conditions.critical, conditions.trips(from_place), conditions.array,
-            state.stations, state.amplification, state.turbulent_from, state.place, state.sheet,
-            state.share, state.laminar, history, iterations,
-        )  # fmt: skip
+            at_angle, places, trips, regime, state, history, iterations
+        )
         used += rounds
         settled = not conditions.tripped or abs(state.place[1] - from_place) < TRIP_TOLERANCE
         if settled or ended != CONVERGED:
@@ -357,6 +308,32 @@ def place_of_trip(nodes: PanelNodes, share: float | None, *, lower: bool) -> flo
     side = slice(middle, None, 1 if lower else -1)
     # The nose may reach a little ahead of the leading edge.
     return float(np.interp(share, np.maximum.accumulate(nodes.x[side]), nodes.arc[side]))
+
+
+def potential_flow_at(flow: Influence, angle: float) -> PotentialFlow:
+    """Lay the potential flow at an angle of attack out as the kernels take it.
+
+    Parameters
+    ----------
+    flow : Influence
+        At that angle.
+    angle : float
+        [rad]
+
+    Returns
+    -------
+    PotentialFlow
+    """
+    cosine, sine = np.cos(angle), np.sin(angle)
+    return PotentialFlow(
+        Linear(flow.along * cosine + flow.across * sine, flow.defect, flow.sheet),
+        Linear(
+            flow.normal_along * cosine + flow.normal_across * sine,
+            flow.normal_defect,
+            flow.normal_sheet,
+        ),
+        wake_directions(flow.wake),
+    )
 
 
 def wake_directions(wake: Wake) -> FloatArray:

@@ -5,7 +5,8 @@ from __future__ import annotations
 import numpy as np
 
 from solver.section.boundary_layer.forces import wall_pressures
-from solver.section.boundary_layer.point import Conditions, FloatArray, LayerState, SectionPanels
+from solver.section.boundary_layer.layout import FloatArray, LayerState
+from solver.section.boundary_layer.point import Conditions, SectionPanels
 from solver.section.boundary_layer.readings import half_friction
 from solver.section.boundary_layer.sweep import FOUND, LOST, solve_single
 from solver.section.flow_results import Distributions, PointStatus

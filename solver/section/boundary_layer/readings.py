@@ -4,22 +4,18 @@ from __future__ import annotations
 
 import math
 
-import numba
 import numpy as np
-from numpy.typing import NDArray
 
 from solver.section.boundary_layer.closures import laminar_friction, turbulent_friction
-from solver.section.boundary_layer.newton import EXPLICIT, side_length, side_node
-
-FloatArray = NDArray[np.float64]
-IntArray = NDArray[np.int64]
-BoolArray = NDArray[np.bool_]
+from solver.section.boundary_layer.compiled import compiled
+from solver.section.boundary_layer.layout import BoolArray, FloatArray, IntArray
+from solver.section.boundary_layer.sides import EXPLICIT, side_length, side_node
 
 UPPER, LOWER = 0, 1
 TRANSITION, SEPARATION, REATTACHMENT = 0, 1, 2
 
 
-@numba.njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def half_friction(state: FloatArray, laminar: BoolArray, nodes: int, reynolds: float) -> FloatArray:
     """Half the friction coefficients at the nodes of the body.
 
@@ -50,7 +46,7 @@ def half_friction(state: FloatArray, laminar: BoolArray, nodes: int, reynolds: f
     return friction
 
 
-@numba.njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def stations(
     x: FloatArray,
     friction: FloatArray,

@@ -1,15 +1,13 @@
 """What the equations need at one station: quantities and their slopes.
 
-A station's state is (ln theta, ln dstar, ln ue, a), with a = n in laminar flow and
-a = ln S in turbulent flow, at the place xi along the surface. A row of slopes holds
-the five derivatives after those, in that order.
+A row of slopes holds derivatives over the station's state (ln theta, ln dstar, ln ue,
+a) and its place xi along the surface, in that order; see
+:mod:`solver.section.boundary_layer.layout` for the rows.
 """
 
 from __future__ import annotations
 
 import math
-
-import numba
 
 from solver.section.boundary_layer.closures import (
     LEAST_LAMINAR_H,
@@ -21,6 +19,7 @@ from solver.section.boundary_layer.closures import (
     turbulent_energy,
     turbulent_friction,
 )
+from solver.section.boundary_layer.compiled import compiled_part, inlined, of_one_type
 from solver.section.boundary_layer.constants import (
     DISSIPATION_FROM_H,
     DISSIPATION_RISE,
@@ -29,150 +28,289 @@ from solver.section.boundary_layer.constants import (
     INNER_LAYER,
     LAG,
 )
+from solver.section.boundary_layer.layout import (
+    FRICTION,
+    GAIN,
+    LAST,
+    LN_DSTAR,
+    LN_ENERGY,
+    LN_EQUILIBRIUM,
+    LN_SPEED,
+    LN_THETA,
+    LN_THICKNESS,
+    PLACE,
+    RATE,
+    FloatArray,
+    Regime,
+    Sloped,
+)
 
-# Rows of what a station yields: ln Hs; xi cf/(2 theta); xi (2 CD/Hs - cf/2)/theta; da/dxi;
-# and in turbulent layers ln S_eq; ln delta.
+AT_WALL = of_one_type(False)
+"""Not in the wake."""
+
 FULLEST_WALL_H, FULLEST_WAKE_H = 1.25, 1.06
 """Below these no turbulent layer is known: the energy shape parameter is bent upwards there,
 so that H has a value for any acceleration and never comes to its floor."""
+BEND = 0.1
+"""How strongly it is bent."""
+FASTEST_SLIP_WALL, FASTEST_SLIP_WAKE = 0.95, 0.99
+"""Largest slip speed Us, over ue."""
+LEAST_OUTER = 0.2
+"""Least share of H - 1 that is left to the outer layer, at a low Rt."""
+THICKEST = 12.0
+"""Largest thickness delta of a layer, over theta."""
 
 
-@numba.njit(cache=True, nogil=True, error_model="numpy")
-def _spread(row, slope_h, slope_r, h):
-    """Slopes over ln theta, ln dstar, ln ue from slopes over H and ln Rt."""
-    row[0] = -h * slope_h + slope_r
-    row[1] = h * slope_h
-    row[2] = slope_r
-    row[3] = 0.0
-    row[4] = 0.0
+@compiled_part
+def _spread(row: FloatArray, over_h: float, over_rt: float, h: float) -> None:
+    """Slopes over the state from slopes over H and ln Rt."""
+    row[LN_THETA] = -h * over_h + over_rt
+    row[LN_DSTAR] = h * over_h
+    row[LN_SPEED] = over_rt
+    row[LAST] = 0.0
+    row[PLACE] = 0.0
 
 
-@numba.njit(cache=True, nogil=True, error_model="numpy")
-def _over_theta(value, row, factor):
-    """Multiply a quantity and its slopes by xi/theta (factor)."""
+@compiled_part
+def _over_theta(value: float, row: FloatArray, factor: float) -> None:
+    """Slopes of value * factor from those of value, where the factor goes as 1/theta."""
     for j in range(5):
         row[j] *= factor
-    row[0] -= value * factor
+    row[LN_THETA] -= value * factor
 
 
-@numba.njit(cache=True, nogil=True, error_model="numpy")
-def laminar_station(state, xi, reynolds, constants, value, slope):
-    """Fill the laminar quantities of one station."""
-    theta = math.exp(state[0])
-    h = math.exp(state[1] - state[0])
-    low = h < LEAST_LAMINAR_H
-    if low:
+@compiled_part
+def _fill_per_theta(
+    flux: Sloped, over_last: float, xi: float, theta: float, h: float, row: FloatArray
+) -> float:
+    """Fill the slopes of xi flux/theta; returns its value."""
+    ratio = xi / theta
+    _spread(row, flux.over_h, flux.over_rt, h)
+    row[LAST] = over_last
+    _over_theta(flux.value, row, ratio)
+    row[PLACE] = flux.value / theta
+    return ratio * flux.value
+
+
+@compiled_part
+def laminar_station(
+    state: FloatArray, xi: float, regime: Regime, value: FloatArray, slope: FloatArray
+) -> None:
+    """Fill the quantities of a laminar station.
+
+    Parameters
+    ----------
+    state : numpy.ndarray, shape (4,)
+        (ln theta, ln dstar, ln ue, n).
+    xi : float
+        Place along the surface. [-]
+    regime : Regime
+    value : numpy.ndarray, shape (6,)
+        Filled, but for the two rows that turbulent layers alone have.
+    slope : numpy.ndarray, shape (6, 5)
+        Filled likewise.
+    """
+    theta = math.exp(state[LN_THETA])
+    h = math.exp(state[LN_DSTAR] - state[LN_THETA])
+    if h < LEAST_LAMINAR_H:
         h = LEAST_LAMINAR_H
-    rt = reynolds * math.exp(state[0] + state[2])
+    rt = regime.reynolds * math.exp(state[LN_THETA] + state[LN_SPEED])
     hs, hs_h = laminar_energy(h)
+    value[LN_ENERGY] = math.log(hs)
+    _spread(slope[LN_ENERGY], hs_h / hs, 0.0, h)
     cf, cf_h = laminar_friction(h)
     cd, cd_h = laminar_dissipation(h)
-    g, g_h, g_r = growth(h, rt, constants)
-    value[0] = math.log(hs)
-    _spread(slope[0], hs_h / hs, 0.0, h)
-    ratio = xi / theta
     cf, cf_h, cd, cd_h = cf / rt, cf_h / rt, cd / rt, cd_h / rt
-    value[1] = ratio * cf
-    _spread(slope[1], cf_h, -cf, h)
-    _over_theta(cf, slope[1], ratio)
-    slope[1, 4] = cf / theta
-    value[2] = ratio * (cd - cf)
-    _spread(slope[2], cd_h - cf_h, -(cd - cf), h)
-    _over_theta(cd - cf, slope[2], ratio)
-    slope[2, 4] = (cd - cf) / theta
-    value[3] = g / theta
-    _spread(slope[3], g_h, g_r, h)
-    _over_theta(g, slope[3], 1.0 / theta)
+    friction, gain = Sloped(cf, cf_h, -cf), Sloped(cd - cf, cd_h - cf_h, -(cd - cf))
+    value[FRICTION] = _fill_per_theta(friction, 0.0, xi, theta, h, slope[FRICTION])
+    value[GAIN] = _fill_per_theta(gain, 0.0, xi, theta, h, slope[GAIN])
+    grown = growth(h, rt, regime.constants)
+    value[RATE] = grown.value / theta
+    _spread(slope[RATE], grown.over_h, grown.over_rt, h)
+    _over_theta(grown.value, slope[RATE], 1.0 / theta)
 
 
-@numba.njit(cache=True, nogil=True, error_model="numpy")
-def turbulent_station(state, xi, reynolds, wake, constants, value, slope):
-    """Fill the turbulent quantities of one station; in a wake there is no friction."""
-    theta = math.exp(state[0])
-    h = math.exp(state[1] - state[0])
-    if h < LEAST_TURBULENT_H:
-        h = LEAST_TURBULENT_H
-    rt = reynolds * math.exp(state[0] + state[2])
-    s = math.exp(state[3])
-    hs, hs_h, hs_r = turbulent_energy(h, rt)
+@inlined
+def _bent_energy(h: float, rt: float, wake: bool) -> Sloped:
+    """Turbulent energy shape parameter, bent upwards below the fullest layers known."""
+    energy = turbulent_energy(h, rt)
     full = FULLEST_WAKE_H if wake else FULLEST_WALL_H
-    if h < full:
-        d, e = full - h, h - 1.0
-        hs += 0.1 * d * d / e
-        hs_h -= 0.1 * (2.0 * d / e + d * d / (e * e))
-    value[0] = math.log(hs)
-    _spread(slope[0], hs_h / hs, hs_r / hs, h)
+    if h >= full:
+        return energy
+    d, e = full - h, h - 1.0
+    return Sloped(
+        energy.value + BEND * d * d / e,
+        energy.over_h - BEND * (2.0 * d / e + d * d / (e * e)),
+        energy.over_rt,
+    )
 
-    # Slip speed Us and what depends on it.
+
+@inlined
+def _slip_speed(h: float, energy: Sloped, wake: bool) -> Sloped:
+    """Slip speed Us = Hs/2 (1 - 4 (H - 1)/(3 H)), over ue."""
     form = 1.0 - 4.0 * (h - 1.0) / (3.0 * h)
-    us = 0.5 * hs * form
-    us_h = 0.5 * hs_h * form - 0.5 * hs * 4.0 / (3.0 * h * h)
-    us_r = 0.5 * hs_r * form
-    cap = 0.99 if wake else 0.95
-    if us > cap:
-        us, us_h, us_r = cap, 0.0, 0.0
-    cf, cf_h, cf_r = 0.0, 0.0, 0.0
-    if not wake:
-        cf, cf_h, cf_r = turbulent_friction(h, rt)
-    many, many_h = 1.0, 0.0
+    slip = 0.5 * energy.value * form
+    cap = FASTEST_SLIP_WAKE if wake else FASTEST_SLIP_WALL
+    if slip > cap:
+        return Sloped(cap, 0.0, 0.0)
+    over_h = 0.5 * energy.over_h * form - 0.5 * energy.value * 4.0 / (3.0 * h * h)
+    return Sloped(slip, over_h, 0.5 * energy.over_rt * form)
+
+
+@inlined
+def _dissipation_factor(h: float, constants: FloatArray) -> tuple[float, float]:
+    """Turbulent dissipation over the published one, and its slope over H."""
     over = h - constants[DISSIPATION_FROM_H]
-    if over > 0.0:
-        span = constants[DISSIPATION_SPAN]
-        e = math.exp(-over / span)
-        many = 1.0 + constants[DISSIPATION_RISE] * span * (1.0 - e)
-        many_h = constants[DISSIPATION_RISE] * e
-    sheets = 2.0 if wake else 1.0
-    raw = cf * us + s * s * (1.0 - us)
-    raw_h = cf_h * us + cf * us_h - s * s * us_h
-    raw_r = cf_r * us + cf * us_r - s * s * us_r
-    raw_s = 2.0 * s * s * (1.0 - us)
-    c = 2.0 * sheets / hs
+    if over <= 0.0:
+        return 1.0, 0.0
+    span = constants[DISSIPATION_SPAN]
+    e = math.exp(-over / span)
+    return 1.0 + constants[DISSIPATION_RISE] * span * (1.0 - e), constants[DISSIPATION_RISE] * e
+
+
+@inlined
+def _dissipation(
+    friction: Sloped, slip: Sloped, energy: Sloped, stress: float, factor: tuple[float, float]
+) -> tuple[Sloped, float]:
+    """2 CD/Hs with CD = cf/2 Us + S^2 (1 - Us), and its slope over ln S besides.
+
+    The factor, with its slope over H, multiplies CD; in a wake it has both halves.
+    """
+    s2 = stress * stress
+    raw = friction.value * slip.value + s2 * (1.0 - slip.value)
+    raw_h = friction.over_h * slip.value + friction.value * slip.over_h - s2 * slip.over_h
+    raw_r = friction.over_rt * slip.value + friction.value * slip.over_rt - s2 * slip.over_rt
+    raw_s = 2.0 * stress * stress * (1.0 - slip.value)
+    many, many_h = factor
+    c = 2.0 / energy.value
     e = c * many * raw
-    e_h = c * (many * raw_h + many_h * raw) - e * hs_h / hs
-    e_r = c * many * raw_r - e * hs_r / hs
-    e_s = c * many * raw_s
+    e_h = c * (many * raw_h + many_h * raw) - e * energy.over_h / energy.value
+    e_r = c * many * raw_r - e * energy.over_rt / energy.value
+    return Sloped(e, e_h, e_r), c * many * raw_s
 
-    ratio = xi / theta
-    value[1] = ratio * cf
-    _spread(slope[1], cf_h, cf_r, h)
-    _over_theta(cf, slope[1], ratio)
-    slope[1, 4] = cf / theta
-    value[2] = ratio * (e - cf)
-    _spread(slope[2], e_h - cf_h, e_r - cf_r, h)
-    slope[2, 3] = e_s
-    _over_theta(e - cf, slope[2], ratio)
-    slope[2, 4] = (e - cf) / theta
 
-    # ln S_eq
+@compiled_part
+def _fill_equilibrium(
+    h: float,
+    rt: float,
+    energy: Sloped,
+    slip: Sloped,
+    constants: FloatArray,
+    value: FloatArray,
+    slope: FloatArray,
+) -> None:
+    """Fill ln S of a layer in equilibrium.
+
+    S^2 = EQUILIBRIUM Hs (H - 1) outer^2/((1 - Us) H^3), with outer = H - 1 but for what
+    the inner layer takes of it.
+    """
     inner = constants[INNER_LAYER] / rt
     outer = h - 1.0 - inner
     outer_h, outer_r = 1.0, inner
-    if outer < 0.2 * (h - 1.0):
-        outer, outer_h, outer_r = 0.2 * (h - 1.0), 0.2, 0.0
-    value[4] = 0.5 * math.log(
-        constants[EQUILIBRIUM] * hs * (h - 1.0) * outer * outer / ((1.0 - us) * h**3)
+    if outer < LEAST_OUTER * (h - 1.0):
+        outer, outer_h, outer_r = LEAST_OUTER * (h - 1.0), LEAST_OUTER, 0.0
+    hs, still = energy.value, 1.0 - slip.value
+    value[LN_EQUILIBRIUM] = 0.5 * math.log(
+        constants[EQUILIBRIUM] * hs * (h - 1.0) * outer * outer / (still * h**3)
     )
+    over_h = energy.over_h / hs + 1.0 / (h - 1.0) + 2.0 * outer_h / outer - 3.0 / h
+    over_rt = energy.over_rt / hs + 2.0 * outer_r / outer
     _spread(
-        slope[4],
-        0.5 * (hs_h / hs + 1.0 / (h - 1.0) + 2.0 * outer_h / outer - 3.0 / h + us_h / (1.0 - us)),
-        0.5 * (hs_r / hs + 2.0 * outer_r / outer + us_r / (1.0 - us)),
+        slope[LN_EQUILIBRIUM],
+        0.5 * (over_h + slip.over_h / still),
+        0.5 * (over_rt + slip.over_rt / still),
         h,
     )
-    # ln delta
+
+
+@compiled_part
+def _fill_thickness(
+    state: FloatArray, h: float, wake: bool, value: FloatArray, slope: FloatArray
+) -> float:
+    """Fill ln delta; returns delta/theta, of one half of a wake."""
     thick = 3.15 + 1.72 / (h - 1.0) + h
-    if thick < 12.0:
-        _spread(slope[5], (1.0 - 1.72 / (h - 1.0) ** 2) / thick, 0.0, h)
+    over_h = 0.0
+    if thick < THICKEST:
+        over_h = (1.0 - 1.72 / (h - 1.0) ** 2) / thick
     else:
-        thick = 12.0
-        _spread(slope[5], 0.0, 0.0, h)
+        thick = THICKEST
+    _spread(slope[LN_THICKNESS], over_h, 0.0, h)
+    slope[LN_THICKNESS, LN_THETA] += 1.0
     if wake:
         thick *= 0.5
-    slope[5, 0] += 1.0
-    value[5] = state[0] + math.log(thick)
-    # d ln S/d xi
-    lag = 0.5 * constants[LAG] / (theta * thick)
-    seq = math.exp(value[4])
-    value[3] = lag * (seq - s)
+    value[LN_THICKNESS] = state[LN_THETA] + math.log(thick)
+    return thick
+
+
+@compiled_part
+def _fill_lag(
+    stress: float, thickness: float, constants: FloatArray, value: FloatArray, slope: FloatArray
+) -> None:
+    """Fill d ln S/dxi = LAG/(2 delta) (S_eq - S), from the two rows filled before."""
+    lag = 0.5 * constants[LAG] / thickness
+    equilibrium = math.exp(value[LN_EQUILIBRIUM])
+    value[RATE] = lag * (equilibrium - stress)
     for j in range(5):
-        slope[3, j] = lag * seq * slope[4, j] - value[3] * slope[5, j]
-    slope[3, 3] -= lag * s
+        follows = lag * equilibrium * slope[LN_EQUILIBRIUM, j]
+        slope[RATE, j] = follows - value[RATE] * slope[LN_THICKNESS, j]
+    slope[RATE, LAST] -= lag * stress
+
+
+@compiled_part
+def turbulent_station(
+    state: FloatArray,
+    xi: float,
+    wake: bool,
+    regime: Regime,
+    value: FloatArray,
+    slope: FloatArray,
+) -> None:
+    """Fill the quantities of a turbulent station.
+
+    Parameters
+    ----------
+    state : numpy.ndarray, shape (4,)
+        (ln theta, ln dstar, ln ue, ln S).
+    xi : float
+        Place along the surface. [-]
+    wake : bool
+        Whether there is no wall: no friction, and both halves dissipate.
+    regime : Regime
+    value : numpy.ndarray, shape (6,)
+        Filled.
+    slope : numpy.ndarray, shape (6, 5)
+        Filled.
+
+    References
+    ----------
+    .. [1] M. Drela, M. B. Giles, Viscous-inviscid analysis of transonic and low Reynolds
+       number airfoils, AIAA Journal 25(10), 1987; recalled, not read. Departures are
+       the constants of `ClosureConstants` that are not called published there.
+    """
+    constants = regime.constants
+    theta = math.exp(state[LN_THETA])
+    h = math.exp(state[LN_DSTAR] - state[LN_THETA])
+    if h < LEAST_TURBULENT_H:
+        h = LEAST_TURBULENT_H
+    rt = regime.reynolds * math.exp(state[LN_THETA] + state[LN_SPEED])
+    stress = math.exp(state[LAST])
+    energy = _bent_energy(h, rt, wake)
+    value[LN_ENERGY] = math.log(energy.value)
+    _spread(slope[LN_ENERGY], energy.over_h / energy.value, energy.over_rt / energy.value, h)
+    slip = _slip_speed(h, energy, wake)
+    friction = Sloped(0.0, 0.0, 0.0)
+    if not wake:
+        friction = turbulent_friction(h, rt)
+    many, many_h = _dissipation_factor(h, constants)
+    halves = 2.0 if wake else 1.0
+    lost, lost_s = _dissipation(friction, slip, energy, stress, (halves * many, halves * many_h))
+    gain = Sloped(
+        lost.value - friction.value,
+        lost.over_h - friction.over_h,
+        lost.over_rt - friction.over_rt,
+    )
+    value[FRICTION] = _fill_per_theta(friction, 0.0, xi, theta, h, slope[FRICTION])
+    value[GAIN] = _fill_per_theta(gain, lost_s, xi, theta, h, slope[GAIN])
+    _fill_equilibrium(h, rt, energy, slip, constants, value, slope)
+    thick = _fill_thickness(state, h, wake, value, slope)
+    _fill_lag(stress, theta * thick, constants, value, slope)

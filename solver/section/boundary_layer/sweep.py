@@ -8,20 +8,18 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from solver.section.boundary_layer.layout import FloatArray, LayerState
 from solver.section.boundary_layer.point import (
-    BROKEN,
-    CONVERGED,
     READINGS,
     Conditions,
-    LayerState,
     Outcome,
     SectionPanels,
     cold_start,
     iterate,
     read,
 )
+from solver.section.boundary_layer.solve import BROKEN, CONVERGED
 
-FloatArray = NDArray[np.float64]
 StatusArray = NDArray[np.uint8]
 
 FOUND, NEARLY, LOST = 0, 1, 2

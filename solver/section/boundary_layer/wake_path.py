@@ -5,18 +5,17 @@ from __future__ import annotations
 import numpy as np
 
 from solver.section.boundary_layer.constants import ClosureConstants
-from solver.section.boundary_layer.newton import speeds
+from solver.section.boundary_layer.layout import LayerState
 from solver.section.boundary_layer.point import (
-    CONVERGED,
     Conditions,
-    LayerState,
     SectionPanels,
     cold_start,
     iterate,
     place_of_trip,
-    wake_directions,
+    potential_flow_at,
 )
-from solver.section.boundary_layer.solve import wake_angles
+from solver.section.boundary_layer.solve import CONVERGED
+from solver.section.boundary_layer.speeds import fill_speeds, fill_wake_angles
 from solver.section.panelling import PanelNodes
 from solver.section.potential_flow import Influence, Wake, influence, straight_wake
 
@@ -89,17 +88,11 @@ def _with_wake_along_flow(
 
 def _followed(panels: SectionPanels, state: LayerState, angle: float) -> Wake:
     """Path of the flow behind the section in a state."""
-    flow, count = panels.influence(angle), panels.count
-    cosine, sine = np.cos(angle), np.sin(angle)
-    base = flow.along * cosine + flow.across * sine
-    normal = flow.normal_along * cosine + flow.normal_across * sine
-    speed, direction = np.empty(panels.total), np.empty(panels.total - count)
-    stagnation = int(state.place[0])
-    speeds(base, flow.defect, flow.sheet, state.sheet, state.stations, stagnation, count, speed)
-    wake_angles(
-        normal, flow.normal_defect, flow.normal_sheet, state.sheet, state.stations, stagnation,
-        count, speed, wake_directions(flow.wake), direction,
-    )  # fmt: skip
+    flow = panels.influence(angle)
+    at_angle, stagnation = potential_flow_at(flow, angle), int(state.place[0])
+    speed, direction = np.empty(panels.total), np.empty(panels.total - panels.count)
+    fill_speeds(at_angle.along, state, stagnation, speed)
+    fill_wake_angles(at_angle, state, stagnation, speed, direction)
     step = np.diff(flow.wake.distance)
     return Wake(
         flow.wake.x[0] + np.append(0.0, np.cumsum(step * np.cos(direction))),

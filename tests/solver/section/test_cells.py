@@ -7,9 +7,11 @@ from dataclasses import dataclass, replace
 import numpy as np
 import pytest
 
-from solver.section.boundary_layer.cells import LAMINAR, TURBULENT, WAKE, cell, transition_cell
+from solver.section.boundary_layer.cells import LAMINAR, TURBULENT, WAKE, cell, scratch
 from solver.section.boundary_layer.constants import ClosureConstants
-from solver.section.boundary_layer.newton import join, scratch
+from solver.section.boundary_layer.layout import Pair, Regime, blank_state
+from solver.section.boundary_layer.transition import transition_cell
+from solver.section.boundary_layer.wake import join
 from tests.solver.section import second_closures, second_residual
 from tests.solver.section.kernel_constants import CHOSEN, chosen_constants, constants
 from tests.solver.section.second_closures import Closures
@@ -33,14 +35,14 @@ class Cell:
 
     def __call__(self) -> tuple[np.ndarray, np.ndarray]:
         """Residuals, shape (3,), and their slopes over both states, shape (2, 3, 5)."""
-        work, more, left, *_ = scratch()
-        slopes = np.zeros((2, 3, 5))
-        same = (*self.states, self.xi, self.reynolds)
+        arrays, pair = scratch(), Pair(*self.states, self.xi)
+        regime = Regime(self.reynolds, CRITICAL, constants())
         if self.kind == TRANSITION:
-            transition_cell(*same, CRITICAL, self.trip, constants(), work, more, left, *slopes)
+            transition_cell(pair, self.trip, regime, arrays)
         else:
-            cell(self.kind, *same, constants(), work, left, *slopes)
-        return left.copy(), slopes
+            cell(self.kind, pair, regime, arrays.cell)
+        left, first, second = arrays.cell.equations
+        return left, np.array([first, second])
 
 
 def draw(kind: int, generator: np.random.Generator) -> Cell:
@@ -225,16 +227,16 @@ def wake_begins(
     `numbers`, shape (2, 4): ln theta, ln m, ln ue, a of both sides. A march leaves the
     first, third and fourth as functions of mass defects: here each is one of its own.
     """
-    state, amplification = np.zeros((6, 4)), np.zeros(6)
+    state = blank_state(6, 0)
     depends, begins, rows = np.zeros((2, 3, 8)), np.empty(4), np.zeros((4, 8))
     for side, node in enumerate(EDGES):
         theta, mass, ue, last = numbers[side]
-        state[node, :3] = theta, mass - ue, ue
-        state[node, 3], amplification[node] = (0.0, last) if laminar[side] else (last, 0.0)
+        state.stations[node, :3] = theta, mass - ue, ue
+        (state.amplification if laminar[side] else state.stations[:, 3])[node] = last
+        state.turbulent_from[side] = -1 if laminar[side] else node
         for row, column in enumerate((1, 2, 3) if side == 0 else (4, 6, 7)):
             depends[side, row, column] = 1.0
-    join(state, amplification, CRITICAL, depends, np.array(laminar), 6, reynolds, constants(),
-         scratch(), begins, rows)  # fmt: skip
+    join(state, Regime(reynolds, CRITICAL, constants()), depends, scratch(), begins, rows)
     by_mass = np.exp(numbers[:, 1])
     slopes = rows[:, [1, 0, 2, 3, 4, 5, 6, 7]]
     slopes[:, 1] *= by_mass[0]

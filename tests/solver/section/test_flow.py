@@ -221,12 +221,12 @@ def test_largest_lift_is_not_claimed_where_the_angles_end_before_it(flow):
 
 def spoiled(monkeypatch, ended: str, change: float, low: float, high: float) -> SectionFlow:
     """A flow in which no try between two angles comes to rest."""
-    from solver.section.boundary_layer import point, sweep
+    from solver.section.boundary_layer import point, solve, sweep
 
     def iterate(panels, conditions, state, *, angle, **rest):
         outcome = point.iterate(panels, conditions, state, angle=angle, **rest)
         if np.radians(low) < angle < np.radians(high):
-            return point.Outcome(getattr(point, ended), outcome.iterations, change)
+            return point.Outcome(getattr(solve, ended), outcome.iterations, change)
         return outcome
 
     monkeypatch.setattr(sweep, "iterate", iterate)
@@ -422,9 +422,9 @@ def test_the_wake_takes_up_what_both_sides_bring():
 
 
 def test_a_point_that_is_not_found_has_places_and_no_layers(monkeypatch):
-    from solver.section.boundary_layer import point, sweep
+    from solver.section.boundary_layer import point, solve, sweep
 
-    monkeypatch.setattr(sweep, "iterate", lambda *_, **__: point.Outcome(point.BROKEN, 1, 1.0))
+    monkeypatch.setattr(sweep, "iterate", lambda *_, **__: point.Outcome(solve.BROKEN, 1, 1.0))
     one = distributions(SECTION, angle=0.05, reynolds=3e5)
     assert one.status == PointStatus.MISSING
     assert one.stagnation == -1

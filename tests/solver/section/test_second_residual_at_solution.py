@@ -9,17 +9,17 @@ import numpy as np
 import pytest
 
 from solver.section.boundary_layer.constants import ClosureConstants
+from solver.section.boundary_layer.layout import LayerState
 from solver.section.boundary_layer.point import (
     Conditions,
-    LayerState,
     SectionPanels,
     iterate,
     place_of_trip,
-    prepared,
     read,
 )
 from solver.section.boundary_layer.solve import AT_REST, SHEET_AT_REST
 from solver.section.boundary_layer.sweep import FOUND, solve_single
+from solver.section.boundary_layer.wake_path import prepared
 from solver.section.geometry import Outline, naca_outline
 from solver.section.panelling import panel_nodes
 from tests.published.measured_sections import outline

@@ -5,7 +5,7 @@ from __future__ import annotations
 import numpy as np
 import pytest
 
-from solver.section.boundary_layer import point, wake_path
+from solver.section.boundary_layer import point, solve, wake_path
 from solver.section.boundary_layer.constants import ClosureConstants
 from solver.section.boundary_layer.point import SectionPanels
 from solver.section.geometry import naca_outline
@@ -23,7 +23,7 @@ def lost(monkeypatch, where) -> None:
 
     def iterate(panels, conditions, state, *, angle, **rest):
         if where(np.degrees(angle)):
-            return point.Outcome(point.MOVING, 1, 1.0)
+            return point.Outcome(solve.MOVING, 1, 1.0)
         return point.iterate(panels, conditions, state, angle=angle, **rest)
 
     monkeypatch.setattr(wake_path, "iterate", iterate)
