@@ -1,6 +1,6 @@
 """Where the section solver's compiled kernels are kept between runs.
 
-Compiling takes some twenty seconds, reading what was compiled a fraction of one.
+Compiling takes half a minute or more, reading what was compiled a fraction of one.
 Numba's own cache would go beside the sources, perhaps unwritable, and does not see
 an edit in a module that a kernel calls: here every version of the sources has a
 folder of its own. Numba reads where to keep things when it is imported, so
