@@ -39,6 +39,7 @@ from solver.section.flow import (
     FlowSettings,
     SectionFlow,
     critical_amplification,
+    turbulence_level,
 )
 from solver.section.geometry import Outline, naca_outline, outline_from_coordinates
 from solver.section.kernel_version import section_version
@@ -208,9 +209,7 @@ def _settings(arguments: argparse.Namespace) -> tuple[FlowSettings, float]:
     settings = FlowSettings(
         trip_upper=arguments.trip_upper, trip_lower=arguments.trip_lower, **given
     )
-    # Mack's relation, turned round.
-    turbulence = math.exp(-(settings.critical_amplification + 8.43) / 2.4)
-    return settings, turbulence
+    return settings, turbulence_level(settings.critical_amplification)
 
 
 @contextmanager

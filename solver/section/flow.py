@@ -23,6 +23,7 @@ from solver.section.flow_results import (
     SectionFlow,
     StatusArray,
     critical_amplification,
+    turbulence_level,
 )
 from solver.section.geometry import Outline
 from solver.section.lift_limits import past_stall
@@ -44,6 +45,7 @@ __all__ = [
     "critical_amplification",
     "distributions",
     "section_flow",
+    "turbulence_level",
 ]
 
 FloatArray = NDArray[np.float64]

@@ -16,6 +16,8 @@ StatusArray = NDArray[np.uint8]
 
 FEWEST_NODES, MOST_NODES = 101, 201
 LEAST_CRITICAL, MOST_CRITICAL = 1.0, 20.0
+MACK_LEVEL, MACK_SLOPE = -8.43, 2.4
+"""Of Mack's relation; recalled, not read."""
 LEAST_TURBULENCE, MOST_TURBULENCE = 0.0002, 0.0196
 """Where the factor of Mack's relation goes from 12 down to 1. In rougher air the layers turn
 turbulent without waves that could be followed: force transition there."""
@@ -83,7 +85,30 @@ def critical_amplification(turbulence: float) -> float:
     .. [1] L. M. Mack, Transition and laminar instability, JPL Publication 77-15, 1977.
     """
     require_within(LEAST_TURBULENCE, MOST_TURBULENCE, turbulence=turbulence)
-    return -8.43 - 2.4 * math.log(turbulence)
+    return MACK_LEVEL - MACK_SLOPE * math.log(turbulence)
+
+
+def turbulence_level(critical: float) -> float:
+    """Turbulence level that goes with an amplification factor: Mack's relation turned round.
+
+    Parameters
+    ----------
+    critical : float
+        Amplification factor at transition, 1 to 20. [-]
+
+    Returns
+    -------
+    float
+        exp(-(critical + 8.43)/2.4), below the range of :func:`critical_amplification`
+        where the factor is above 12. [-]
+
+    Raises
+    ------
+    InputError
+        If `critical` is out of range.
+    """
+    require_within(LEAST_CRITICAL, MOST_CRITICAL, critical=critical)
+    return math.exp((MACK_LEVEL - critical) / MACK_SLOPE)
 
 
 class PointStatus(IntEnum):

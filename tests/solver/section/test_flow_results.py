@@ -3,7 +3,7 @@ import math
 import pytest
 
 from solver.errors import InputError
-from solver.section.flow import FlowSettings, critical_amplification
+from solver.section.flow import FlowSettings, critical_amplification, turbulence_level
 
 
 def test_macks_relation_gives_nine_at_seven_hundredths_of_a_percent():
@@ -18,6 +18,18 @@ def test_a_factor_of_e_in_turbulence_is_worth_2_4():
 
 def test_a_factor_of_one_is_left_in_the_roughest_air():
     assert critical_amplification(0.0196) == pytest.approx(1.0, abs=0.01)  # the range in two digits
+
+
+@pytest.mark.parametrize("turbulence", [0.0002, 0.0007, 0.0196])
+def test_the_relation_turned_round_gives_the_turbulence_back(turbulence):
+    back = turbulence_level(critical_amplification(turbulence))
+    assert back == pytest.approx(turbulence, rel=1e-12)  # rounding
+
+
+@pytest.mark.parametrize("critical", [0.9, 20.5, math.nan])
+def test_a_factor_out_of_range_has_no_turbulence(critical):
+    with pytest.raises(InputError, match="critical"):
+        turbulence_level(critical)
 
 
 @pytest.mark.parametrize("turbulence", [0.0, -0.001, 0.0001, 0.03, math.nan, math.inf])
