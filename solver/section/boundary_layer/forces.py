@@ -7,7 +7,7 @@ import math
 import numpy as np
 
 from solver.section.boundary_layer.compiled import compiled
-from solver.section.boundary_layer.layout import FloatArray
+from solver.section.boundary_layer.layout import LN_DSTAR, LN_SPEED, LN_THETA, FloatArray
 from solver.section.panelling import PanelNodes
 
 MOMENT_CENTRE = 0.25
@@ -58,10 +58,10 @@ def wall_pressures(state: FloatArray, curvature: FloatArray, share: float) -> Fl
     count = len(curvature)
     pressure = np.empty(count)
     for i in range(count):
-        theta = math.exp(state[i, 0])
-        h = math.exp(state[i, 1] - state[i, 0])
+        theta = math.exp(state[i, LN_THETA])
+        h = math.exp(state[i, LN_DSTAR] - state[i, LN_THETA])
         across = 2.0 * share * curvature[i] * theta * (1.0 + min(h, FULLEST_H))
-        pressure[i] = 1.0 - math.exp(2.0 * state[i, 2]) * (1.0 - across)
+        pressure[i] = 1.0 - math.exp(2.0 * state[i, LN_SPEED]) * (1.0 - across)
     return pressure
 
 
@@ -100,6 +100,6 @@ def coefficients(
         across += mean * dx
         arm_x = 0.5 * (x[i] + x[i + 1]) - MOMENT_CENTRE
         moment -= mean * (arm_x * dx + 0.5 * (y[i] + y[i + 1]) * dy)
-    h = math.exp(wake_end[1] - wake_end[0])
-    drag = 2.0 * math.exp(wake_end[0] + 0.5 * (h + 5.0) * wake_end[2])
+    h = math.exp(wake_end[LN_DSTAR] - wake_end[LN_THETA])
+    drag = 2.0 * math.exp(wake_end[LN_THETA] + 0.5 * (h + 5.0) * wake_end[LN_SPEED])
     return across * math.cos(angle) - along * math.sin(angle), drag, moment

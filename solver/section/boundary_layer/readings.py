@@ -8,7 +8,14 @@ import numpy as np
 
 from solver.section.boundary_layer.closures import laminar_friction, turbulent_friction
 from solver.section.boundary_layer.compiled import compiled
-from solver.section.boundary_layer.layout import BoolArray, FloatArray, IntArray
+from solver.section.boundary_layer.layout import (
+    LN_DSTAR,
+    LN_SPEED,
+    LN_THETA,
+    BoolArray,
+    FloatArray,
+    IntArray,
+)
 from solver.section.boundary_layer.sides import EXPLICIT, side_length, side_node
 
 UPPER, LOWER = 0, 1
@@ -37,8 +44,8 @@ def half_friction(state: FloatArray, laminar: BoolArray, nodes: int, reynolds: f
     """
     friction = np.empty(nodes)
     for i in range(nodes):
-        h = math.exp(state[i, 1] - state[i, 0])
-        rt = reynolds * math.exp(state[i, 0] + state[i, 2])
+        h = math.exp(state[i, LN_DSTAR] - state[i, LN_THETA])
+        rt = reynolds * math.exp(state[i, LN_THETA] + state[i, LN_SPEED])
         if laminar[i]:
             friction[i] = laminar_friction(h)[0] / rt
         else:
