@@ -221,19 +221,24 @@ def lopsided(turn: np.ndarray) -> np.ndarray:
 @pytest.mark.parametrize("defect", [thickening, lopsided])
 @pytest.mark.parametrize("name", ["symmetric", "cambered", "wedge"])
 def test_speed_by_outflow_from_the_surface(name, defect):
-    errors = []
+    errors, ahead = [], []
     for count in (81, 161, 321):
         turn = evenly(count)
         nodes, found = solved(name, count)
         exact = SHAPES[name].speed_by_defect(turn[1:-1], defect)
-        off = (found.defect[:count, :count] @ defect(turn))[1:-1] - exact
-        # Near the trailing edge the surfaces are closer together than their panels are
-        # long: the last nodes of a cusp never converge, those of an edge slowly.
-        errors.append(np.max(np.abs(off[nodes.x[1:-1] < 0.9])) / np.max(np.abs(exact)))
-    # First order, less beside an edge with an angle: a panel's sources are spread evenly
-    # over it. Over both refinements together, since the worst node is not always the same.
-    assert np.mean(orders(errors)) > (0.5 if name == "wedge" else 0.8)
-    assert errors[1] < 0.005  # of 160 panels
+        off = np.abs((found.defect[:count, :count] @ defect(turn))[1:-1] - exact)
+        off /= np.max(np.abs(exact))
+        # Just before a cusp the surfaces are closer together than their panels are
+        # long, and the last nodes never converge; with an edge of 9 degrees they do.
+        errors.append(np.max(off[nodes.x[1:-1] < (1.0 if name == "wedge" else 0.95)]))
+        ahead.append(np.max(off[nodes.x[1:-1] < 0.9]))
+    assert errors[0] < 0.03
+    assert errors[1] < 0.012  # of 160 panels
+    assert errors[2] < 0.006
+    # Ahead of the edge first order, a little less where an edge has an angle: a panel's
+    # sources are spread evenly over it. Over both refinements, since the worst node moves.
+    assert np.mean(orders(ahead)) > (0.5 if name == "wedge" else 0.8)
+    assert ahead[1] < 0.005
 
 
 def in_the_wake(distance: np.ndarray) -> np.ndarray:
